@@ -1,0 +1,1 @@
+"""Rolling-ball engine: document, geometry, contact, dynamics, findings, parts."""

@@ -1,0 +1,1 @@
+"""Walls as bounded patches: gap, normal, curvature, contact laws."""

@@ -1,0 +1,1 @@
+"""How the ball moves: rolling, slipping, flight, impact."""

@@ -1,0 +1,1 @@
+"""Parts: wall solids, their inspection, their files."""

@@ -1,0 +1,1 @@
+"""Curves, frames and meridians as tables of numbers."""

@@ -1,0 +1,1 @@
+"""Time stepping: one step, events, the loop, the trajectory."""

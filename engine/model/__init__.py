@@ -1,0 +1,1 @@
+"""The document: what a designer has drawn, frozen and validated."""

@@ -1,0 +1,1 @@
+"""The drawings: plan, elevation, solid view, inspector, findings."""

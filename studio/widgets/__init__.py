@@ -1,0 +1,1 @@
+"""Small editors and marks that the views share."""
