@@ -258,22 +258,55 @@ def box_distance(walls, patch, point):
 
 
 @kernel
-def nearest_wall(walls, point, r, active):
-    """Return (gap, patch) of the nearest wall that is not `active` and not linked to it.
+def entry_distance(walls, patch, point):
+    """Return the least way a point outside a closed tube has to one of its end discs, m."""
+    first = walls.first[patch]
+    last = first + walls.count[patch] - 1
+    best = FAR
+    for row in (first, last):
+        x, y, z = walls.knots[row, 1] - point[0], walls.knots[row, 2] - point[1], walls.knots[row, 3] - point[2]
+        best = min(best, math.sqrt(x * x + y * y + z * z) - walls.number[patch, 0])
+    return best
 
-    The gap is a lower bound where a wall is far away: its box is nearer than anything else. A wall whose
-    front the ball has passed by more than its radius is not there for it (walls are one-sided).
+
+@kernel
+def is_full_tube(walls, patch):
+    """Return whether a patch is a tube all round: it can only be entered through its ends."""
+    a = walls.number[patch]
+    return walls.kind[patch] == SWEPT_INSIDE and a[2] - a[1] >= FULL_CIRCLE and a[3] < 0.5
+
+
+@kernel
+def nearest_wall(walls, point, r, active):
+    """Find the wall that the ball touches next, other than `active` and what is linked to it.
+
+    Returns
+    -------
+    gap : float
+        Gap of the nearest wall that faces the ball, m (FAR if none).
+    patch : int
+        That wall, -1 if none.
+    free : float
+        Way the ball may travel before it can touch any of them, m. Walls are one-sided: one that the centre
+        has passed by more than r is not there until the ball comes round.
     """
-    best, found = FAR, -1
+    best, found, free = FAR, -1, FAR
     for patch in range(walls.kind.shape[0]):
         if patch == active or is_linked(walls, active, patch):
             continue
-        if box_distance(walls, patch, point) - r >= best:
+        off = box_distance(walls, patch, point) - r
+        if off >= free:
             continue
         foot = foot_on(walls, patch, point, r, (-1, 0.0))
-        if -r < foot.gap < best and is_inside(walls, patch, foot):
-            best, found = foot.gap, patch
-    return best, found
+        if foot.gap > -r and is_inside(walls, patch, foot):
+            free = min(free, foot.gap)
+            if foot.gap < best:
+                best, found = foot.gap, patch
+        elif foot.gap < 0.0 and is_full_tube(walls, patch):
+            free = min(free, max(off, entry_distance(walls, patch, point)))
+        else:
+            free = min(free, max(off, 0.0))
+    return best, found, free
 
 
 @kernel

@@ -1,0 +1,97 @@
+"""Which mode follows: what the ball does on a wall it is on, and the state put back on its constraints."""
+
+import math
+
+from engine.constants import STOPPED_SPIN
+from engine.contact.query import foot_on
+from engine.contact.surface import MU_STATIC
+from engine.dynamics.rates import contact_rates
+from engine.dynamics.state import FLIGHT, REST, ROLLING, SLIPPING, Mode
+from engine.kernel import kernel
+
+STUCK_SLIP = 1e-7
+"""m/s. Slip below this after an impact or at a new wall is rounding, not slip."""
+
+
+@kernel
+def put_back(walls, ball, mode, y, guess):
+    """Put the state back on gap = 0, n.v = 0 and, rolling, u = 0; return the correction of the position, m."""
+    if mode.regime == FLIGHT:
+        return 0.0
+    r = ball.radius
+    foot = foot_on(walls, mode.patch, (y[0], y[1], y[2]), r, guess)
+    nx, ny, nz = foot.nx, foot.ny, foot.nz
+    y[0] -= foot.gap * nx
+    y[1] -= foot.gap * ny
+    y[2] -= foot.gap * nz
+    vn = y[3] * nx + y[4] * ny + y[5] * nz
+    y[3] -= vn * nx
+    y[4] -= vn * ny
+    y[5] -= vn * nz
+    if mode.regime == ROLLING:
+        spin = y[6] * nx + y[7] * ny + y[8] * nz
+        if mode.spin == 0 and abs(spin) < STOPPED_SPIN:
+            spin = 0.0
+        y[6] = (ny * y[5] - nz * y[4]) / r + spin * nx
+        y[7] = (nz * y[3] - nx * y[5]) / r + spin * ny
+        y[8] = (nx * y[4] - ny * y[3]) / r + spin * nz
+    return abs(foot.gap)
+
+
+@kernel
+def spin_sign(contact):
+    """Return the sign that spin friction works against: of the spin, or held at 0, or of what feeds it."""
+    if contact.hold <= 0.0 or contact.spin > STOPPED_SPIN:
+        return 1
+    if contact.spin < -STOPPED_SPIN:
+        return -1
+    if abs(contact.feed) <= contact.hold:
+        return 0
+    return 1 if contact.feed > 0.0 else -1
+
+
+@kernel
+def mode_on(walls, ball, patch, y, out):
+    """Return the mode of a ball that is on `patch` without closing on it.
+
+    N < 0: flight. No slip and the needed force within the cone: rolling. Else slipping, `young` when it starts from
+    no slip at all.
+    """
+    trial = Mode(patch, ROLLING, 0, 1)
+    contact = contact_rates(walls, ball, trial, y, (-1, 0.0), out)
+    if not contact.force > 0.0:
+        return Mode(-1, FLIGHT, 0, 0)
+    if contact.slip > STUCK_SLIP:
+        return Mode(patch, SLIPPING, 0, 1)
+    if contact.need <= walls.law[patch, MU_STATIC] * contact.force:
+        return Mode(patch, ROLLING, 0, spin_sign(contact))
+    return Mode(patch, SLIPPING, 1, 1)
+
+
+@kernel
+def holds_still(walls, ball, mode, y, out):
+    """Return whether a stopped ball stays: the pull along the wall is within what rolling loss resists, |f_t| <= (b/r) N.
+
+    A ball on a plane stays where tan(slope) <= b/r = c_rr.
+    """
+    still = y.copy()
+    for j in range(3, 9):
+        still[j] = 0.0
+    frictionless = Mode(mode.patch, SLIPPING, 0, 1)
+    contact = contact_rates(walls, ball, frictionless, still, (-1, 0.0), out)
+    # without slip velocity the slipping force is zero, so the acceleration is the pull along the wall
+    pull = math.sqrt(out[3] * out[3] + out[4] * out[4] + out[5] * out[5])
+    return pull <= contact.loss / ball.radius * contact.force
+
+
+@kernel
+def stop(y):
+    """Set velocity and spin to zero."""
+    for j in range(3, 9):
+        y[j] = 0.0
+
+
+@kernel
+def rest_mode(mode):
+    """Return the mode of a ball at rest on its wall."""
+    return Mode(mode.patch, REST, 0, 0)

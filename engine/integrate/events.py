@@ -1,0 +1,199 @@
+"""Guards and where they fall below zero: pure functions of the state, located on the dense output.
+
+A guard is positive while the mode holds. Slots: 0 normal force, 1 friction cone, 2 slip, 3 rolling stop,
+4 spin about the normal, 5 to 10 the six boundaries of the patch. A guard that does not apply is FAR.
+"""
+
+from typing import NamedTuple
+
+import numpy as np
+
+from engine.constants import ROOT_SETTLED, ROOT_TURNS, STOPPED_SLIP, STOPPED_SPEED, YOUNG_SLIP
+from engine.contact.query import FAR, boundary, foot_on
+from engine.contact.surface import MU_KINETIC, MU_STATIC
+from engine.dynamics.rates import rates
+from engine.dynamics.state import FLIGHT, ROLLING, SLIPPING
+from engine.integrate.step import dense_at
+from engine.kernel import kernel
+
+GUARDS = 11
+LIFT, CONE, SLIP, STOP, SPIN, SIDE = 0, 1, 2, 3, 4, 5
+
+
+class Heading(NamedTuple):
+    """Directions at the start of a step: of the slip velocity and of the rolling spin (zero when there is none)."""
+
+    ux: float
+    uy: float
+    uz: float
+    rx: float
+    ry: float
+    rz: float
+
+
+@kernel
+def heading_of(contact, ball):
+    """Return the unit slip and rolling directions of a contact."""
+    u = contact.slip
+    ux, uy, uz = (contact.ux / u, contact.uy / u, contact.uz / u) if u > STOPPED_SLIP else (0.0, 0.0, 0.0)
+    size = np.sqrt(contact.rx * contact.rx + contact.ry * contact.ry + contact.rz * contact.rz)
+    if size * ball.radius > STOPPED_SPEED:
+        return Heading(ux, uy, uz, contact.rx / size, contact.ry / size, contact.rz / size)
+    return Heading(ux, uy, uz, 0.0, 0.0, 0.0)
+
+
+@kernel
+def fill_guards(walls, ball, mode, contact, heading, out):
+    """Fill `out` (11,) with the guards of a mode."""
+    for j in range(GUARDS):
+        out[j] = FAR
+    if mode.regime == FLIGHT:
+        return
+    law = walls.law[mode.patch]
+    out[LIFT] = contact.force
+    if mode.regime == ROLLING:
+        out[CONE] = law[MU_STATIC] * contact.force - contact.need
+        has_way = heading.rx != 0.0 or heading.ry != 0.0 or heading.rz != 0.0
+        if contact.loss > 0.0 and has_way:
+            along = contact.rx * heading.rx + contact.ry * heading.ry + contact.rz * heading.rz
+            out[STOP] = along * ball.radius - STOPPED_SPEED
+        if contact.hold > 0.0:
+            out[SPIN] = contact.hold - abs(contact.feed) if mode.spin == 0 else mode.spin * contact.spin
+    elif mode.regime == SLIPPING:
+        fill_slip_guards(law, mode, contact, heading, out)
+    for side in range(6):
+        out[SIDE + side] = boundary(walls, mode.patch, contact.foot, side)
+
+
+@kernel
+def fill_slip_guards(law, mode, contact, heading, out):
+    """Fill the guards of slipping: young slip ends when it is fast or no longer called for, grown slip at no slip."""
+    if mode.young == 1:
+        out[CONE] = contact.need - law[MU_KINETIC] * contact.force
+        out[SLIP] = YOUNG_SLIP - contact.slip
+    elif heading.ux != 0.0 or heading.uy != 0.0 or heading.uz != 0.0:
+        along = contact.ux * heading.ux + contact.uy * heading.uy + contact.uz * heading.uz
+        out[SLIP] = along - STOPPED_SLIP
+
+
+@kernel
+def guard_at(walls, ball, mode, work, place):
+    """Return guard `slot` at the share theta of the step. `place` = (theta, slot, piece, q, heading)."""
+    theta, slot, piece, q, heading = place
+    dense_at(work.dense, theta, work.trial)
+    contact = rates(walls, ball, mode, work.trial, (piece, q), work.spare)
+    fill_guards(walls, ball, mode, contact, heading, work.guards)
+    return work.guards[slot]
+
+
+@kernel
+def locate_guard(walls, ball, mode, work, place):
+    """Return the share of the step at which a guard that ends below zero reaches zero (Illinois rule).
+
+    `place` = (high, slot, value at the start, piece, q, heading), with the guard below zero at the share `high`.
+    """
+    high, slot, start, piece, q, heading = place
+    if start <= 0.0:
+        return 0.0
+    low, f_low = 0.0, start
+    f_high = guard_at(walls, ball, mode, work, (high, slot, piece, q, heading))
+    if f_high >= 0.0:
+        return high
+    return illinois(walls, ball, mode, work, (low, f_low, high, f_high, slot, piece, q, heading))
+
+
+@kernel
+def illinois(walls, ball, mode, work, bracket):
+    """Return the upper end of a bracket shrunk round the root: the guard is at or just below zero there."""
+    low, f_low, high, f_high, slot, piece, q, heading = bracket
+    true_high = f_high
+    for turn in range(ROOT_TURNS):
+        if high - low < ROOT_SETTLED or true_high == 0.0:
+            break
+        middle = high - f_high * (high - low) / (f_high - f_low)
+        if turn % 8 == 7 or not low < middle < high:
+            middle = 0.5 * (low + high)
+        value = guard_at(walls, ball, mode, work, (middle, slot, piece, q, heading))
+        if value > 0.0:
+            low, f_low = middle, value
+            f_high *= 0.5
+        else:
+            high, f_high, true_high = middle, value, value
+            f_low *= 0.5
+        if abs(value) < 1e-15 and value <= 0.0:
+            break
+    return high
+
+
+@kernel
+def gap_at(walls, ball, patch, work, theta):
+    """Return the gap to a wall at the share theta of the step, m."""
+    dense_at(work.dense, theta, work.trial)
+    y = work.trial
+    return foot_on(walls, patch, (y[0], y[1], y[2]), ball.radius, (-1, 0.0)).gap
+
+
+@kernel
+def locate_touch(walls, ball, patch, work, high):
+    """Return the share of the step at which the gap to `patch`, below zero at `high`, last became zero.
+
+    A ball that has just left this wall starts at a gap of zero: the start of the bracket is then sought inside the step.
+    """
+    low, f_low = 0.0, gap_at(walls, ball, patch, work, 0.0)
+    if f_low <= 0.0:
+        best = 0.0
+        for i in range(1, 16):
+            value = gap_at(walls, ball, patch, work, high * i / 16.0)
+            if value > best:
+                low, f_low, best = high * i / 16.0, value, value
+        if best == 0.0:
+            return 0.0
+    f_high = gap_at(walls, ball, patch, work, high)
+    for turn in range(ROOT_TURNS):
+        if high - low < ROOT_SETTLED:
+            break
+        middle = high - f_high * (high - low) / (f_high - f_low)
+        if turn % 8 == 7 or not low < middle < high:
+            middle = 0.5 * (low + high)
+        value = gap_at(walls, ball, patch, work, middle)
+        if value > 0.0:
+            low, f_low = middle, value
+            f_high *= 0.5
+        else:
+            high, f_high = middle, value
+            f_low *= 0.5
+    return high
+
+
+@kernel
+def is_end_of_turn(mode, contact, ball, slot):
+    """Return whether a slip or stop guard marks a true end: the vector itself is near zero, not just turned round."""
+    if slot == SLIP and mode.young == 0:
+        return contact.slip < 100.0 * STOPPED_SLIP
+    if slot == STOP:
+        size2 = contact.rx * contact.rx + contact.ry * contact.ry + contact.rz * contact.rz
+        return np.sqrt(size2) * ball.radius < 100.0 * STOPPED_SPEED
+    return True
+
+
+@kernel
+def first_guard(walls, ball, mode, work, step):
+    """Return (theta, slot) of the first guard that falls below zero in the step, (2, -1) if none does.
+
+    `step` = (Contact at the end, heading at the start, piece, q); `work.before` holds the guards at the start.
+    """
+    contact, heading, piece, q = step
+    fill_guards(walls, ball, mode, contact, heading, work.after)
+    theta, slot = 2.0, -1
+    for j in range(GUARDS):
+        if work.after[j] >= 0.0 or (j >= SIDE and work.after[j] >= work.before[j]):
+            continue
+        high = min(theta, 1.0)
+        if high < 1.0 and guard_at(walls, ball, mode, work, (high, j, piece, q, heading)) >= 0.0:
+            continue
+        share = locate_guard(walls, ball, mode, work, (high, j, work.before[j], piece, q, heading))
+        dense_at(work.dense, share, work.trial)
+        there = rates(walls, ball, mode, work.trial, (piece, q), work.spare)
+        if is_end_of_turn(mode, there, ball, j):
+            theta, slot = share, j
+    return theta, slot
