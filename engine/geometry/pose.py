@@ -90,4 +90,4 @@ def from_pose(pose: Pose, points: Array) -> Array:
     forward = pose.forward
     left = np.array([-forward[1], forward[0], 0.0])
     up = np.array([0.0, 0.0, 1.0])
-    return pose.position + np.asarray(points, dtype=np.float64) @ np.stack([forward, left, up])
+    return np.asarray(pose.position + np.asarray(points, dtype=np.float64) @ np.stack([forward, left, up]))

@@ -36,7 +36,7 @@ def piece_lengths(curve: Curve, u: Array) -> Array:
     half = 0.5 * np.diff(u)
     nodes = (u[:-1] + half)[:, None] + half[:, None] * _NODES
     speed = np.sqrt((curve(nodes.ravel())[1] ** 2).sum(axis=1)).reshape(nodes.shape)
-    return half * (speed @ _WEIGHTS)
+    return np.asarray(half * (speed @ _WEIGHTS))
 
 
 def rows_at(curve: Curve, u: Array) -> Array:
