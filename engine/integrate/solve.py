@@ -145,18 +145,15 @@ def longest(walls, mode, y, free, reach):
 
 
 @kernel
-def take_event(walls, ball, mode, work, event):
-    """Put the state at the event, act on it. `event` = (theta, slot, patch met, guess); returns (Outcome, correction)."""
-    theta, slot, met, guess = event
+def stand_at(walls, ball, mode, work, place):
+    """Put `work.y0` at the share theta of the step. `place` = (theta, guess); returns (Contact there, correction)."""
+    theta, guess = place
     y = work.y0
     dense_at(work.dense, theta, work.trial)
     for j in range(STATE):
         y[j] = work.trial[j]
     correction = put_back(walls, ball, mode, y, guess)
-    if met >= 0:
-        return after_touch(walls, ball, mode, y, met, work.spare), correction
-    contact = rates(walls, ball, mode, y, guess, work.spare)
-    return after_guard(walls, ball, mode, y, (slot, contact.slip), work.spare), correction
+    return rates(walls, ball, mode, y, guess, work.spare), correction
 
 
 @kernel
@@ -224,8 +221,14 @@ def solve(walls, ball, start, options, asked, cancel):
             log = add_sample(log, y, mode, contact, (t, impact, -1))
             h = h_next
             continue
-        outcome, off = take_event(walls, ball, mode, work, (theta, slot, met, guess))
-        t, impact, correction = t + theta * h, impact + outcome.lost, max(correction, off)
+        contact, off = stand_at(walls, ball, mode, work, (theta, guess))
+        t, correction = t + theta * h, max(correction, off)
+        log = add_sample(log, y, mode, contact, (t, impact, -1))
+        if met >= 0:
+            outcome = after_touch(walls, ball, mode, y, met, work.spare)
+        else:
+            outcome = after_guard(walls, ball, mode, y, (slot, contact.slip), work.spare)
+        impact += outcome.lost
         free = 0.0 if outcome.mode.patch != mode.patch else free
         h = max(min(h, h_next), FIRST_STEP)
         mode, status, fresh = outcome.mode, outcome.status, True
