@@ -69,26 +69,24 @@ def mode_on(walls, ball, patch, y, out):
 
 
 @kernel
-def holds_still(walls, ball, mode, y, out):
-    """Return whether a stopped ball stays: the pull along the wall is within what rolling loss resists, |f_t| <= (b/r) N.
-
-    A ball on a plane stays where tan(slope) <= b/r = c_rr.
-    """
-    still = y.copy()
-    for j in range(3, 9):
-        still[j] = 0.0
-    frictionless = Mode(mode.patch, SLIPPING, 0, 1)
-    contact = contact_rates(walls, ball, frictionless, still, (-1, 0.0), out)
-    # without slip velocity the slipping force is zero, so the acceleration is the pull along the wall
-    pull = math.sqrt(out[3] * out[3] + out[4] * out[4] + out[5] * out[5])
-    return pull <= contact.loss / ball.radius * contact.force
-
-
-@kernel
 def stop(y):
     """Set velocity and spin to zero."""
     for j in range(3, 9):
         y[j] = 0.0
+
+
+@kernel
+def holds_still(walls, ball, mode, y, out):
+    """Stop the ball and return whether it stays: the pull along the wall is within what rolling loss resists, |f_t| <= (b/r) N.
+
+    A ball on a plane stays where tan(slope) <= b/r = c_rr.
+    """
+    stop(y)
+    frictionless = Mode(mode.patch, SLIPPING, 0, 1)
+    contact = contact_rates(walls, ball, frictionless, y, (-1, 0.0), out)
+    # without slip velocity the slipping force is zero, so the acceleration is the pull along the wall
+    pull = math.sqrt(out[3] * out[3] + out[4] * out[4] + out[5] * out[5])
+    return pull <= contact.loss / ball.radius * contact.force
 
 
 @kernel

@@ -3,7 +3,7 @@
 import numpy as np
 
 from engine.dynamics.state import STATE
-from engine.kernel import kernel
+from engine.kernel import allocating, kernel
 
 T, Y, PATCH, REGIME, S, ANGLE, NORMAL, FORCE, SLIP, FRICTION, NEED, IMPACT, ASKED = (
     0,
@@ -28,7 +28,7 @@ KIND, MARK_T, MARK_Y, MARK_PATCH, VALUE, MARK_NORMAL, MARK_IMPACT, MODE = 0, 1, 
 MARK = 25
 
 
-@kernel
+@allocating
 def room(rows, count):
     """Return `rows` with room for one more."""
     if count < rows.shape[0]:

@@ -10,7 +10,7 @@ from engine.constants import IMPACT_ROUNDS, REST_IMPACT
 from engine.contact.query import foot_on
 from engine.contact.surface import EXIT, OPEN, RESTITUTION, ROLE_CATCH, ROLE_FLOOR
 from engine.dynamics.impact import strike
-from engine.dynamics.phases import holds_still, mode_on, put_back, rest_mode, stop
+from engine.dynamics.phases import holds_still, mode_on, put_back, rest_mode
 from engine.dynamics.state import FLIGHT, ROLLING, SLIPPING, Mode
 from engine.integrate.events import CONE, LIFT, SIDE, SLIP, STOP
 from engine.kernel import kernel
@@ -82,7 +82,6 @@ def after_slip(walls, ball, mode, y, slip, out):
 def after_stop(walls, ball, mode, y, out):
     """Return what follows a stop: rest where rolling loss holds the ball, else it rolls on from rest."""
     held = holds_still(walls, ball, mode, y, out)
-    stop(y)
     if held:
         return Outcome(rest_mode(mode), RESTING, RESTED, mode.patch, 0.0, (0.0, 0.0, 0.0), 0.0)
     return plain(mode_on(walls, ball, mode.patch, y, out), STOPPING, mode.patch, 0.0)

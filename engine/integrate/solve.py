@@ -23,7 +23,7 @@ from engine.integrate.events import fill_guards, first_guard, heading_of, locate
 from engine.integrate.log import MARK, SAMPLE, room, write_mark, write_sample
 from engine.integrate.outcome import GOES_ON, QUIET, SLIP_ONSET, after_guard, after_touch
 from engine.integrate.step import dense_at, fill_dense, new_work, next_size, try_step, warm_start
-from engine.kernel import kernel
+from engine.kernel import allocating, kernel
 
 RELEASED = 0
 TIME_UP, CHATTERING, STEPS_UP, CANCELLED, NO_FIT, NOT_FINITE = 3, 4, 5, 6, 7, 9
@@ -49,7 +49,7 @@ class Log(NamedTuple):
     n_marks: int
 
 
-@kernel
+@allocating
 def add_sample(log, y, mode, contact, stamp):
     """Return the log with one more sample."""
     samples = room(log.samples, log.n_samples)
@@ -57,7 +57,7 @@ def add_sample(log, y, mode, contact, stamp):
     return Log(samples, log.marks, log.n_samples + 1, log.n_marks)
 
 
-@kernel
+@allocating
 def add_mark(log, y, mode, event, stamp):
     """Return the log with one more event."""
     marks = room(log.marks, log.n_marks)
@@ -113,7 +113,7 @@ def meet_wall(walls, ball, mode, work, free):
     return theta, met, (way if met < 0 else 0.0)
 
 
-@kernel
+@allocating
 def sample_step(walls, ball, mode, work, log, span):
     """Add the samples that fall within a step (or the part of it up to an event).
 
@@ -156,7 +156,7 @@ def stand_at(walls, ball, mode, work, place):
     return rates(walls, ball, mode, y, guess, work.spare), correction
 
 
-@kernel
+@allocating
 def solve(walls, ball, start, options, asked, cancel):
     """Roll one ball from its start to its end.
 
@@ -229,10 +229,10 @@ def solve(walls, ball, start, options, asked, cancel):
         else:
             outcome = after_guard(walls, ball, mode, y, (slot, contact.slip), work.spare)
         impact += outcome.lost
-        free = 0.0 if outcome.mode.patch != mode.patch else free
-        h = max(min(h, h_next), FIRST_STEP)
         mode, status, fresh = outcome.mode, outcome.status, True
         if outcome.kind != QUIET:
+            # from here a run may be resumed: nothing of the step before may be carried on
+            h, free = FIRST_STEP, 0.0
             event = (outcome.kind, outcome.patch, outcome.value, outcome.normal)
             log = add_mark(log, y, mode, event, (t, impact))
         count = count + 1 if t - window < CHATTER_TIME else 0

@@ -13,7 +13,7 @@ import numpy as np
 from engine.constants import STEP_GROW, STEP_SAFETY, STEP_SHRINK
 from engine.dynamics.rates import rates
 from engine.dynamics.state import STATE
-from engine.kernel import kernel
+from engine.kernel import allocating, kernel
 
 ORDER = 5
 STAGES = 7
@@ -57,7 +57,7 @@ class Work(NamedTuple):
     after: np.ndarray
 
 
-@kernel
+@allocating
 def new_work():
     """Return scratch arrays for one run."""
     return Work(
