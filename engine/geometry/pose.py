@@ -14,6 +14,13 @@ from numpy.typing import NDArray
 Array = NDArray[np.float64]
 
 
+def cross(a: Array, b: Array) -> Array:
+    """Cross product of two vectors (3,); ten times faster than the general one of numpy."""
+    ax, ay, az = a.tolist()
+    bx, by, bz = b.tolist()
+    return np.array([ay * bz - az * by, az * bx - ax * bz, ax * by - ay * bx])
+
+
 @dataclass(frozen=True, eq=False)
 class Pose:
     """Position (3,) m, unit tangent (3,), unit `down` (3,) normal to it and not banked."""
@@ -25,7 +32,7 @@ class Pose:
     @property
     def side(self) -> Array:
         """Unit vector to the left, (3,): tangent x down."""
-        return np.cross(self.tangent, self.down)
+        return cross(self.tangent, self.down)
 
     @property
     def forward(self) -> Array:

@@ -116,11 +116,9 @@ def unit(vectors: Array) -> Array:
 
 def moved(table: Array, pose: Pose) -> Array:
     """A table made at the origin with heading +x, carried to the place and heading of `pose` (turned about the vertical only)."""
-    turn = yaw_matrix(pose.heading).T
     out = np.empty_like(table)
     out[:, S] = table[:, S]
-    for part in (R, D1, D2, DOWN, DOWN1):
-        out[:, part] = table[:, part] @ turn
+    out[:, 1:] = (table[:, 1:].reshape(-1, 3) @ yaw_matrix(pose.heading).T).reshape(-1, 15)
     out[:, R] += pose.position
     return out
 
