@@ -39,7 +39,9 @@ LOSSLESS = Pair(
 """Ideal rolling: nothing slips, nothing is lost."""
 
 
-def single_run(*elements: Element, release: Release | None = None, pair: str = "steel-pmma", height: float = 1.0) -> Design:
+def single_run(
+    *elements: Element, release: Release | None = None, pair: str = "steel-pmma", height: float = 1.0
+) -> Design:
     """Return a design of one run, `r1`, of the given elements; a 16 mm steel ball let go at rest."""
     run = Run(
         id="r1",

@@ -55,7 +55,7 @@ class Ball(Frozen):
         if any(outer <= inner for inner, outer in zip(radii, radii[1:], strict=False)):
             raise ValueError("layers must grow from inside out: each radius larger than the one before")
         if self.layers[-1].material == VOID:
-            raise ValueError('the outermost of the layers cannot be "void"; give the surface a material')
+            raise ValueError('layers must not end with "void"; give the surface a material')
         return self
 
     @property
@@ -65,13 +65,14 @@ class Ball(Frozen):
 
     def mass(self, materials: Mapping[str, Material]) -> float:
         """Mass, kg: (4/3) pi sum rho_i (q_i^3 - q_(i-1)^3) over the layers of outer radius q_i."""
-        return 4.0 / 3.0 * math.pi * sum(rho * (outer**3 - inner**3) for rho, inner, outer in self._shells(materials))
+        shells = self._shells(materials)
+        return 4.0 / 3.0 * math.pi * sum(rho * (outer**3 - inner**3) for rho, inner, outer in shells)
 
     def inertia_factor(self, materials: Mapping[str, Material]) -> float:
         """Inertia factor k = I/(m r^2): 2/5 when solid, up to 2/3 for a thin shell.
 
-        A shell of density rho between radii p and q has m = (4/3) pi rho (q^3 - p^3) and I = (8/15) pi rho (q^5 - p^5), so
-        k = (2/5) sum rho_i (q_i^5 - q_(i-1)^5) / (r^2 sum rho_i (q_i^3 - q_(i-1)^3)), here with q in units of r.
+        A shell of density rho between radii p and q has m = (4/3) pi rho (q^3 - p^3), I = (8/15) pi rho (q^5 - p^5), so
+        k = (2/5) sum rho_i (q_i^5 - q_(i-1)^5) / sum rho_i (q_i^3 - q_(i-1)^3), with q in units of r.
         """
         r = self.radius
         shells = [(rho, inner / r, outer / r) for rho, inner, outer in self._shells(materials)]
@@ -93,9 +94,9 @@ class Ball(Frozen):
 class Pair(Frozen):
     """How one ball material and one wall material touch.
 
-    `rolling_loss` is the energy form: energy lost per metre over the normal load. `loss_speed` (m/s), when given, makes it
-    grow with speed: rolling_loss (1 + v / loss_speed). `spin_arm` (m) is the arm of friction against spin about the normal;
-    left out, it follows from `contact_modulus` (Pa) by Hertz, and without both there is no such friction.
+    `rolling_loss` is the energy form: energy lost per metre over the normal load. `loss_speed` (m/s), when given, makes
+    it grow with speed: rolling_loss (1 + v / loss_speed). `spin_arm` (m) is the arm of friction against spin about the
+    normal; left out, it follows from `contact_modulus` (Pa) by Hertz, and without both there is no such friction.
     """
 
     id: Identifier = named("Id")
@@ -117,6 +118,7 @@ class Pair(Frozen):
         """Refuse kinetic friction above static: a ball that has just gripped would slip again at once."""
         if self.kinetic_friction > self.static_friction:
             raise ValueError(
-                f"kinetic_friction {self.kinetic_friction:g} must not be larger than static_friction {self.static_friction:g}"
+                f"kinetic_friction {self.kinetic_friction:g} must not be larger than "
+                f"static_friction {self.static_friction:g}"
             )
         return self

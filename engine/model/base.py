@@ -125,15 +125,19 @@ def fields_of(model: Frozen | type[Frozen]) -> list[FieldSpec]:
 def _spec(name: str, field: FieldInfo) -> FieldSpec:
     """Specification of one field from its declaration."""
     extra = field.json_schema_extra if isinstance(field.json_schema_extra, dict) else {}
-    members = list(_members(field.annotation))
-    optional = type(None) in members
+    optional = type(None) in _members(field.annotation)
     low, high = _bounds(field.metadata)
-    kind, choices = _kind_of([member for member in members if member is not type(None)])
+    kind, choices = _kind_of(members_of(field.annotation))
     if "reference" in extra:
         kind = "reference"
         choices = (str(extra["reference"]),)
     unit, label = str(extra.get("unit", "")), str(extra.get("label", name.replace("_", " ").capitalize()))
     return FieldSpec(name, label, unit, low, high, kind, optional, choices)
+
+
+def members_of(annotation: Any) -> tuple[Any, ...]:
+    """Plain members of an annotation, None left out: classes of a union, or the one type."""
+    return tuple(member for member in _members(annotation) if member is not type(None))
 
 
 def _members(annotation: Any) -> Iterator[Any]:
@@ -160,7 +164,7 @@ def _bounds(metadata: list[Any]) -> tuple[float | None, float | None]:
     return low, high
 
 
-def _kind_of(members: list[Any]) -> tuple[FieldKind, tuple[str, ...]]:
+def _kind_of(members: tuple[Any, ...]) -> tuple[FieldKind, tuple[str, ...]]:
     """Kind of editor for a field, and its choices."""
     first = members[0]
     if isinstance(first, type) and issubclass(first, Frozen):

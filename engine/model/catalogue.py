@@ -1,7 +1,8 @@
 """Built-in materials, contact pairs, balls and tubes: literal values, each with its source.
 
-Marks in the sources: "common practice" is what the trade uses, not measured here; "from memory" was not checked against
-a text. A design's own entries come before these. Measure friction and rolling loss on a prototype before trusting a margin.
+Marks in the sources: "common practice" is what the trade uses, not measured here; "from memory" was not checked
+against a text. A design's own entries come before these. Measure friction and rolling loss on a prototype before
+trusting a margin.
 """
 
 from collections.abc import Iterable
@@ -148,7 +149,8 @@ _SOLID_BALLS = (
     ("nylon", (0.0127, 0.020, 0.0254)),
 )
 _BALL_TOLERANCE = {"steel": 5e-5, "stainless": 5e-5, "glass": 5e-4, "maple": 3e-4, "nylon": 5e-5}
-"""Plus or minus, m: bearing grades far inside 0.05 mm; glass marbles 0.3 to 0.5 mm (common practice); wood and nylon from memory."""
+"""Plus or minus, m: bearing grades are far inside 0.05 mm; glass marbles 0.3 to 0.5 mm is common practice; wood and
+nylon from memory."""
 
 _GAME_BALLS = (
     Ball(

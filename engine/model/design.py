@@ -116,9 +116,10 @@ Start = Annotated[FreeStart | OutletStart, Field(discriminator="kind")]
 class Release(Frozen):
     """How the ball is let go, at the inlet of the first element.
 
-    `offset` is the distance downstream of the inlet (m), `speed` along the track (m/s), `climb` the wall angle where the
-    ball stands (rad, positive on the left wall), `spin` about the normal from wall to ball (rad/s). `direction` turns the
-    velocity from the line of travel toward the left, in the plane of the wall (rad); left out, it goes along the track.
+    `offset` is the distance downstream of the inlet (m), `speed` along the track (m/s), `climb` the wall angle where
+    the ball stands (rad, positive on the left wall), `spin` about the normal from wall to ball (rad/s). `direction`
+    turns the velocity from the line of travel toward the left, in the plane of the wall (rad); left out, it goes
+    along the track.
     """
 
     offset: float = metres(0.0, "Offset", 0.0)

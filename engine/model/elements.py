@@ -64,7 +64,7 @@ Section = Annotated[Tube | Trough, Field(discriminator="kind")]
 
 
 # -- shapes of a funnel ---------------------------------------------------------------------------
-# Height z over the throat at radius rho, for rim radius R, throat radius q and depth h: the throat is (q, 0), the rim (R, h).
+# Height z over the throat at radius rho, for rim radius R, throat radius q, depth h: throat at (q, 0), rim at (R, h).
 class Cone(Frozen):
     """Straight: z = h (rho - q)/(R - q)."""
 
@@ -93,7 +93,8 @@ class Parabolic(Frozen):
 class Points(Frozen):
     """Free shape through points (rho, z) from the throat out to the rim, rho growing.
 
-    The first point is stretched onto the throat and the last onto the rim, each axis by itself, so points drawn in any scale fit.
+    The first point is stretched onto the throat and the last onto the rim, each axis by itself, so that points drawn
+    in any scale fit.
     """
 
     kind: Literal["points"] = "points"
@@ -198,7 +199,10 @@ class Easing(SegmentBase):
 
 
 class FreeLine(SegmentBase):
-    """Free line with continuous curvature through points (forward, left, up) seen from the inlet, which itself is not listed."""
+    """Free line with continuous curvature through points (forward, left, up) seen from the inlet.
+
+    The inlet itself, (0, 0, 0), is not listed.
+    """
 
     kind: Literal["free_line"] = "free_line"
     points: tuple[Point3, ...] = several(
@@ -210,7 +214,7 @@ class FreeLine(SegmentBase):
 
     @model_validator(mode="after")
     def _check_points(self) -> "FreeLine":
-        """Refuse two equal points in a row, the inlet (0, 0, 0) counted as the first: the line would have no direction there."""
+        """Refuse two equal points in a row, the inlet counted as the first: the line would have no direction there."""
         path = ((0.0, 0.0, 0.0), *self.points)
         for index, (here, there) in enumerate(zip(path, path[1:], strict=False)):
             if here == there:
@@ -245,7 +249,8 @@ class VesselBase(ElementBase):
 class Funnel(VesselBase):
     """Funnel from rim to throat, `depth` high; the ball comes in along the rim, on the side given by `hand`.
 
-    `inlet_drop` is how far below the rim the ball meets the wall, `inlet_angle` how far its path dips below level there.
+    `inlet_drop` is how far below the rim the ball meets the wall, `inlet_angle` how far its path dips below level
+    there.
     """
 
     kind: Literal["funnel"] = "funnel"
@@ -268,7 +273,7 @@ class Funnel(VesselBase):
 
 
 class Well(VesselBase):
-    """Cylinder of inner radius `radius`: `tilt` 0 upright, pi/2 lying toward `tilt_heading`; fillets at rim and floor."""
+    """Cylinder of inner radius `radius`, `tilt` 0 upright, pi/2 lying toward `tilt_heading`; fillets at rim, floor."""
 
     kind: Literal["well"] = "well"
     radius: float = metres(0.1, "Radius")

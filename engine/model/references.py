@@ -1,7 +1,7 @@
 """Checks across a whole design: ids are unique, what is pointed at exists, no run starts from itself.
 
-They read a design or the plain dictionaries of its file alike, so that a file with a wrong number somewhere else is told
-about these too. What is not of the expected shape is passed over here: the check of fields names it.
+They read a design or the plain dictionaries of its file alike, so that a file with a wrong number somewhere else is
+told about these too. What is not of the expected shape is passed over here: the check of fields names it.
 """
 
 from collections.abc import Iterator, Mapping, Sequence
