@@ -313,19 +313,19 @@ def _plate(arrival: _Arrival, along: Array, size: tuple[float, float], drop: flo
     """Plate `drop` below the invert of what arrives, from there on; centred below an outlet that points down."""
     pose = arrival.pose
     origin = _invert(pose, arrival.bore) - drop * UP
-    if _points_down(pose):
+    if points_down(pose):
         origin = origin - 0.5 * size[0] * along
     return Plate(origin, along, cross(UP, pose.forward), *size)
 
 
 def _invert(pose: Pose, bore: float) -> Array:
     """Lowest point (3,) of the bore at a pose; its middle where it points down."""
-    if _points_down(pose):
+    if points_down(pose):
         return pose.position
     return np.asarray(pose.position + bore * pose.down)
 
 
-def _points_down(pose: Pose) -> bool:
+def points_down(pose: Pose) -> bool:
     """Whether a pose is so steep that what follows stands below it rather than ahead of it."""
     return math.hypot(pose.tangent[0], pose.tangent[1]) < 0.2
 

@@ -98,11 +98,14 @@ def _by_arc_length(s: Array, place: Array, slope: Array, bend: Array) -> Array:
     return np.concatenate([length[:, None], place, tangent, curved], axis=1)
 
 
-def edge_table(table: Array, normal: tuple[float, Array], outward: tuple[float, Array]) -> tuple[Array, tuple[float, float], int]:
-    """Sharp edge along a table whose `down` is e: its table, its range of wall angle, and which limit faces the wall (2 low, 3 high).
+def edge_table(
+    table: Array, normal: tuple[float, Array], outward: tuple[float, Array], span: float = math.pi
+) -> tuple[Array, tuple[float, float], tuple[int, int]]:
+    """Sharp edge along a table whose `down` is e: its table, its range of wall angle, and which limits face the wall and away from it.
 
     `normal` = (a, c) stands for the wall's unit normal a e + c at the edge, `outward` likewise for the unit direction that leads off
-    the wall along it. The edge holds a ball from `normal` through `outward` to the far side of a thin plate: half a turn.
+    the wall along it. The edge holds a ball from `normal` on, over `span` (rad) toward `outward`; half a turn is a thin plate.
+    Limits are numbered as in `Scene.link`: 2 the low one, 3 the high one.
     """
     share = (normal[0] + outward[0]) / math.sqrt(2.0)
     fixed = (normal[1] + outward[1]) / math.sqrt(2.0)
@@ -111,5 +114,5 @@ def edge_table(table: Array, normal: tuple[float, Array], outward: tuple[float, 
     out[:, DOWN1] = share * table[:, DOWN1]
     wall_side = np.cross(out[0, D1], out[0, DOWN]) @ (normal[0] * table[0, DOWN] + normal[1])
     if wall_side > 0.0:
-        return out, (-0.75 * math.pi, 0.25 * math.pi), 3
-    return out, (-0.25 * math.pi, 0.75 * math.pi), 2
+        return out, (0.25 * math.pi - span, 0.25 * math.pi), (3, 2)
+    return out, (-0.25 * math.pi, span - 0.25 * math.pi), (2, 3)
