@@ -5,7 +5,7 @@ import errno
 from collections.abc import Iterable, Sequence
 
 NEAR_ENOUGH = 0.6
-"""Share of equal letters (difflib ratio) from which a known name is offered for an unknown one; 0.6 finds one or two slips."""
+"""Share of equal letters (difflib ratio) from which a known name is offered; 0.6 finds one or two slips."""
 
 OS_REASONS = {
     errno.ENOENT: "there is no such file or folder",

@@ -1,7 +1,7 @@
 """Steps that bring an older file up to date: one function from each version n to n + 1, dictionary in, dictionary out.
 
 Version 1 is the first, so there is no step yet. To add one: raise `SCHEMA_VERSION` in `engine/model/design.py`, write
-the step here with the reason in its docstring, enter it in `STEPS`, keep a file of the old version in `tests/documents/`.
+the step here, with the reason in its docstring; enter it in `STEPS`; keep an old file in `tests/documents/`.
 """
 
 from collections.abc import Callable, Mapping

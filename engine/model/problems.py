@@ -1,4 +1,4 @@
-"""Sentences for what the document classes refuse: field path, what was given, what is allowed, the nearest known name."""
+"""Sentences for what the document classes refuse: path, what was given, what is allowed, the nearest known name."""
 
 import json
 from collections.abc import Callable, Sequence
@@ -7,7 +7,7 @@ from typing import Any, NamedTuple, get_args, get_origin
 from pydantic import ValidationError
 from pydantic_core import ErrorDetails
 
-from engine.errors import suggestion
+from engine.errors import nearest, suggestion
 from engine.model.base import FieldSpec, Frozen, fields_of, kind_name, members_of
 from engine.model.references import Problem, ReferenceProblemsError
 
@@ -17,7 +17,7 @@ ID_RULE = "an id is 1 to 64 letters a to z, digits, `_`, `.` or `-`, and begins 
 
 
 class _Place(NamedTuple):
-    """Where an error stands: path in the document, class that owns the field, its specification, classes allowed there."""
+    """Where an error stands: path in the document, class that owns the field, its declaration, classes allowed."""
 
     path: str
     owner: type[Frozen]
@@ -140,7 +140,8 @@ def _number(detail: ErrorDetails, place: _Place) -> str:
 def _unknown_field(detail: ErrorDetails, place: _Place) -> str:
     """Sentence about a field that the class does not have."""
     names = list(place.owner.model_fields)
-    return f"{place.path} is not a field of {_class_words(place.owner)}{suggestion(str(detail['loc'][-1]), names, len(names))}."
+    near = suggestion(str(detail["loc"][-1]), names, len(names))
+    return f"{place.path} is not a field of {_class_words(place.owner)}{near}."
 
 
 def _class_words(owner: type[Frozen]) -> str:
@@ -167,8 +168,9 @@ def _choice(detail: ErrorDetails, place: _Place) -> str:
     """Sentence about a word that is not one of the allowed ones."""
     choices = list(place.spec.choices) if place.spec is not None else []
     given = detail["input"]
-    near = suggestion(given, choices, len(choices)) if isinstance(given, str) else ""
-    return f"{place.path} is {shown(given)}; allowed is {detail.get('ctx', {}).get('expected', '')}{near}."
+    near = nearest(given, choices) if isinstance(given, str) else None
+    hint = f'; the nearest is "{near}"' if near is not None else ""
+    return f"{place.path} is {shown(given)}; allowed is {detail.get('ctx', {}).get('expected', '')}{hint}."
 
 
 def _length(detail: ErrorDetails, place: _Place) -> str:
@@ -177,7 +179,7 @@ def _length(detail: ErrorDetails, place: _Place) -> str:
     entries = f"a list of {len(detail['input'])}" if isinstance(detail["input"], (list, tuple)) else "a list"
     low, high = context.get("min_length"), context.get("max_length")
     allowed = f"at least {low}" if low is not None else f"at most {high}"
-    return f"{place.path} is {entries}; give {allowed} entries."
+    return f"{place.path} is {entries}; give {allowed} of its entries."
 
 
 def _text_length(detail: ErrorDetails, place: _Place) -> str:
