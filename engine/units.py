@@ -1,7 +1,8 @@
 """Units at the edges: SI inside, millimetres, inches, degrees and per cent where a person reads or types.
 
 The unit of a quantity is named in SI ("m", "rad", "m/s", ...), or is "grade" (a slope, shown in per cent) or
-"ratio" (a plain number). The length unit of a design (mm, cm, m, in) decides how lengths are shown and what a bare number means.
+"ratio" (a plain number). The length unit of a design (mm, cm, m, in) decides how lengths are shown and what a bare
+number means.
 """
 
 import math

@@ -107,9 +107,9 @@ def shown(value: Any) -> str:
         return "an object {...}"
     if isinstance(value, (list, tuple)):
         return f"a list of {len(value)}"
-    text = (
-        json.dumps(value, ensure_ascii=True) if isinstance(value, (str, int, float, bool, type(None))) else str(value)
-    )
+    plain = isinstance(value, (str, int, float, type(None)))
+    text = json.dumps(value, ensure_ascii=False) if plain else str(value)
+    text = text.encode("utf-8", "backslashreplace").decode("utf-8")
     return text if len(text) <= SHOWN else f"{text[: SHOWN - 3]}..."
 
 
@@ -176,10 +176,9 @@ def _choice(detail: ErrorDetails, place: _Place) -> str:
 def _length(detail: ErrorDetails, place: _Place) -> str:
     """Sentence about a list with too many or too few entries."""
     context = detail.get("ctx", {})
-    entries = f"a list of {len(detail['input'])}" if isinstance(detail["input"], (list, tuple)) else "a list"
     low, high = context.get("min_length"), context.get("max_length")
     allowed = f"at least {low}" if low is not None else f"at most {high}"
-    return f"{place.path} is {entries}; give {allowed} of its entries."
+    return f"{place.path} has {len(detail['input'])} entries; give {allowed}."
 
 
 def _text_length(detail: ErrorDetails, place: _Place) -> str:

@@ -59,7 +59,7 @@ def cross_problems(design: Any) -> list[Problem]:
         if given not in names:
             found.append(
                 Problem(
-                    path, f'{path} is "{given}", which is no {what} of this design{suggestion(given, sorted(names))}.'
+                    path, f'{path} is "{given}", but there is no such {what}{suggestion(given, sorted(names))}.'
                 )
             )
     found.extend(_cycles(design))
@@ -143,7 +143,7 @@ def _place(node: Any, path: str, known: _Known) -> Iterator[tuple[str, str, str,
     yield from _pointer(node, "run", path, "run", set(known.runs))
     elements = known.runs.get(_text(node, "run"))
     if elements is not None:
-        yield from _pointer(node, "element", path, "element of that run", elements)
+        yield from _pointer(node, "element", path, "element in that run", elements)
 
 
 def _cycles(design: Any) -> Iterator[Problem]:
