@@ -170,7 +170,8 @@ def _choice(detail: ErrorDetails, place: _Place) -> str:
     given = detail["input"]
     near = nearest(given, choices) if isinstance(given, str) else None
     hint = f'; the nearest is "{near}"' if near is not None else ""
-    return f"{place.path} is {shown(given)}; allowed is {detail.get('ctx', {}).get('expected', '')}{hint}."
+    allowed = detail.get("ctx", {}).get("expected") or " or ".join(choices)
+    return f"{place.path} is {shown(given)}; allowed is {allowed}{hint}."
 
 
 def _length(detail: ErrorDetails, place: _Place) -> str:
@@ -212,6 +213,7 @@ _PHRASES: dict[str, Callable[[ErrorDetails, _Place], str]] = {
     "union_tag_invalid": _kind,
     "union_tag_not_found": _kind,
     "literal_error": _choice,
+    "int_parsing_size": _choice,
     "too_long": _length,
     "too_short": _length,
     "string_too_long": _text_length,

@@ -58,9 +58,7 @@ def cross_problems(design: Any) -> list[Problem]:
     for path, what, given, names in _pointers(design, known):
         if given not in names:
             found.append(
-                Problem(
-                    path, f'{path} is "{given}", but there is no such {what}{suggestion(given, sorted(names))}.'
-                )
+                Problem(path, f'{path} is "{given}", but there is no such {what}{suggestion(given, sorted(names))}.')
             )
     found.extend(_cycles(design))
     return found

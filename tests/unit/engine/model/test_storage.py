@@ -173,6 +173,11 @@ def test_every_cut_of_a_file_is_refused_with_sentences():
             'runs[0].ball is "steel-161", but there is no such ball; the nearest known name is "steel-16".',
         ),
         ({"units": "inch"}, "units is \"inch\"; allowed is 'mm', 'cm', 'm' or 'in'; the nearest is \"in\"."),
+        (
+            with_element(kind="well", id="w", hand=10**400),
+            "runs[0].elements[0].hand is a whole number of about 401 digits; allowed is 1 or -1.",
+        ),
+        (with_element(kind="well", id="w", hand=0), "runs[0].elements[0].hand is 0; allowed is 1 or -1."),
         ({"runs": {}}, "runs is an object {...}; give a list in square brackets."),
         ({"site": 3}, "site is 3; give an object in braces."),
         ({"name": 3}, 'name is 3; give text in quotes ("...").'),
