@@ -25,7 +25,7 @@ from engine.contact.patches import (
     Revolution,
     Tag,
 )
-from engine.contact.surface import EXIT
+from engine.contact.surface import EXIT, ROLE_CATCH
 from engine.geometry.offsets import edge_table
 from engine.geometry.pose import Array, cross
 from engine.geometry.primitives import circle, circle_arc, straight_between
@@ -41,6 +41,8 @@ SAME_BORE = 1e-6
 """m. A bore narrower than a throat by more than this is a ledge."""
 NO_KINK = 1e-6
 """rad. A wall that turns less than this at a joint goes on without an edge."""
+CLEAR_OF_END = 1e-4
+"""m. The catching disc behind a last outlet stands this much further off than a ball as wide as the bore would need."""
 HALF_TURN = math.pi
 
 
@@ -96,6 +98,7 @@ def _add_segment(patches: PatchList, entry: Placed, near: Neighbours, tag: Tag) 
     elif near.after is None:
         for patch in (inside, *edges):
             patches.set_link(patch, END, EXIT)
+        _add_way_out(patches, (table[-1, R], table[-1, D1]), radius, tag)
     return Walls((inside,), edges, tuple(range(first, len(patches))), mouth, end)
 
 
@@ -149,6 +152,18 @@ def _add_ring(patches: PatchList, entry: Placed, inside: int, which: int, tag: T
     return ring
 
 
+def _add_way_out(patches: PatchList, outlet: tuple[Array, Array], radius: float, tag: Tag) -> None:
+    """Add a catching disc beyond the last outlet, for a ball that leaves it in flight.
+
+    It stands one radius of the bore further on: a ball that rolls has crossed the end of its wall before it touches the disc.
+    """
+    position, ahead = outlet
+    u = cross(ahead, np.eye(3)[int(np.argmin(np.abs(ahead)))])
+    u = u / math.sqrt(u @ u)
+    disc = Rectangle(position + (radius + CLEAR_OF_END) * ahead, u, cross(u, ahead), disc=radius)
+    patches.add_plane(disc, tag._replace(role=ROLE_CATCH))
+
+
 # -- vessels --------------------------------------------------------------------------------------
 def _add_vessel(patches: PatchList, entry: Placed, near: Neighbours, tag: Tag) -> Walls:
     if entry.meridian is None or entry.origin is None or entry.axis is None:
@@ -162,6 +177,8 @@ def _add_vessel(patches: PatchList, entry: Placed, near: Neighbours, tag: Tag) -
     end, way_on = -1, PHI_MAX
     if near.after is None:
         patches.set_link(parts[-1], END, EXIT)
+        if entry.outlet is not None and not isinstance(entry.element, Dome):
+            _add_way_out(patches, (entry.outlet.position, entry.outlet.tangent), float(entry.meridian[-1, 1]), tag)
     elif entry.outlet is not None:
         end, way_on = _add_throat(patches, entry, near.after, parts[-1], tag)
     return Walls(tuple(parts), (), tuple(range(first, len(patches))), -1, end, way_on)

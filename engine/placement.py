@@ -254,6 +254,7 @@ def _place_vessel(element: Vessel, arrival: _Arrival) -> Placed:
     axis = vessels.axis_of(element)
     if isinstance(element, Dome):
         origin = _invert(pose, arrival.bore)
+        origin[2] = pose.position[2] - arrival.bore - vessels.ENTRY_CLEARANCE
         outlet: Pose | None = vessels.dome_outlet(meridian, origin, pose)
     else:
         origin = vessels.mouth(element, pose, arrival.bore, axis)
@@ -321,7 +322,7 @@ def _plate(arrival: _Arrival, along: Array, size: tuple[float, float], drop: flo
 def _invert(pose: Pose, bore: float) -> Array:
     """Lowest point (3,) of the bore at a pose; its middle where it points down."""
     if points_down(pose):
-        return pose.position
+        return pose.position.copy()
     return np.asarray(pose.position + bore * pose.down)
 
 

@@ -295,7 +295,7 @@ def nearest_wall(walls, point, r, active):
         if patch == active or is_linked(walls, active, patch):
             continue
         off = box_distance(walls, patch, point) - r
-        if off >= free:
+        if off > max(free, 0.0):
             continue
         foot = foot_on(walls, patch, point, r, (-1, 0.0))
         if foot.gap > -r and is_inside(walls, patch, foot):
