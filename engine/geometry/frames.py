@@ -48,16 +48,28 @@ def with_down(rows: Array, start: Array) -> Array:
 def with_transported_down(rows: Array, start: Array) -> Array:
     """Table (n, 16): `start` carried along without turning about the tangent, down' = -(t' . down) t.
 
-    Between knots the frame is carried by two reflections (the double-reflection method), exact on circles and fourth order
-    elsewhere.
+    The frame is carried from half piece to half piece by two reflections (the double-reflection method), exact on circles and
+    fourth order elsewhere.
     """
-    down = np.empty((len(rows), 3))
+    path = _halved(rows)
+    carried = np.empty((len(path), 3))
     first = start - (start @ rows[0, D1]) * rows[0, D1]
-    down[0] = first / math.sqrt(first @ first)
-    for i in range(len(rows) - 1):
-        down[i + 1] = _reflected_twice(rows[i], rows[i + 1], down[i])
+    carried[0] = first / math.sqrt(first @ first)
+    for i in range(len(path) - 1):
+        carried[i + 1] = _reflected_twice(path[i], path[i + 1], carried[i])
+    down = carried[::2]
     change = -(rows[:, D2] * down).sum(axis=1, keepdims=True) * rows[:, D1]
     return np.concatenate([rows, down, change], axis=1)
+
+
+def _halved(rows: Array) -> Array:
+    """Columns s, r, r' (2 n - 1, 7) at the knots and half-way between them."""
+    middle = 0.5 * (rows[1:, S] + rows[:-1, S])
+    position, tangent, _ = interpolate(rows, middle)
+    out = np.empty((2 * len(rows) - 1, 7))
+    out[::2] = rows[:, :7]
+    out[1::2] = np.concatenate([middle[:, None], position, unit(tangent)], axis=1)
+    return out
 
 
 def _reflected_twice(low: Array, high: Array, down: Array) -> Array:

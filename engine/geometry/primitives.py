@@ -8,9 +8,9 @@ import math
 
 import numpy as np
 
-from engine.geometry.frames import with_down, with_gravity_down, with_transported_down
+from engine.geometry.frames import with_down, with_gravity_down
 from engine.geometry.pose import Array, Pose, from_pose, regraded
-from engine.geometry.tables import PIECE_TURN, rows_at, tabulate, unit
+from engine.geometry.tables import PIECE_TURN, rows_at, tabulate
 
 FULL_TURN = 2.0 * math.pi
 
@@ -181,13 +181,3 @@ def spline_at(u: Array, values: Array, bends: Array, x: Array) -> tuple[Array, A
     value = a * first + b * last + ((a**3 - a) * low + (b**3 - b) * high) * h * h / 6.0
     slope = (last - first) / h + ((3.0 * b * b - 1.0) * high - (3.0 * a * a - 1.0) * low) * h / 6.0
     return value, slope, a * low + b * high
-
-
-def closed_ring(points: Array, count: int) -> Array:
-    """Table of a closed smooth line through points (n, 3), n >= 3, `count` knots between neighbours; `down` carried along."""
-    ends = np.concatenate([points[-3:], points, points[:4]])
-    knots = np.concatenate([[0.0], np.cumsum(np.sqrt((np.diff(ends, axis=0) ** 2).sum(axis=1)))])
-    bends = spline_bends(knots, ends)
-    u = np.linspace(knots[3], knots[3 + len(points)], count * len(points) + 1)
-    rows = rows_at(lambda x: spline_at(knots, ends, bends, x), u)
-    return with_transported_down(rows, unit(np.cross(rows[:1, 4:7], [[0.0, 0.0, 1.0]]))[0])
