@@ -132,11 +132,28 @@ def refined(table: Array, pieces: int) -> Array:
 
 
 def _with_down_between(table: Array, rows: Array, kept: NDArray[np.bool_]) -> Array:
-    """The refined rows (n, 10) with `down`: by the gravity frame where the table used it, else carried along from the start."""
+    """The refined rows (n, 10) with `down`: by the gravity frame where the table used it, else as the table turns it."""
     by_gravity = with_gravity_down(table[:, :10]) if np.hypot(table[:, 4], table[:, 5]).min() >= STEEP else None
     if by_gravity is not None and np.abs(by_gravity[:, DOWN] - table[:, DOWN]).max() < 1e-9:
         full = with_gravity_down(rows)
     else:
-        full = with_transported_down(rows, table[0, DOWN])
+        full = _twisted_alike(table, with_transported_down(rows, table[0, DOWN]), kept)
     full[kept] = table
     return full
+
+
+def _twisted_alike(table: Array, carried: Array, kept: NDArray[np.bool_]) -> Array:
+    """The transported frame `carried` turned about the tangent as the frame of `table` is, cubic between the knots of `table`."""
+    side, own_side = side_of(carried[kept])[0], side_of(table)[0]
+    sine, cosine = (table[:, DOWN] * side).sum(axis=1), (table[:, DOWN] * carried[kept][:, DOWN]).sum(axis=1)
+    angle = np.unwrap(np.arctan2(sine, cosine))
+    rate = (table[:, DOWN1] * own_side).sum(axis=1)
+    s = carried[:, S]
+    piece = np.clip(np.searchsorted(table[:, S], s, side="right") - 1, 0, len(table) - 2)
+    h = table[piece + 1, S] - table[piece, S]
+    x = (s - table[piece, S]) / h
+    rise = angle[piece + 1] - angle[piece]
+    first, last = h * rate[piece], h * rate[piece + 1]
+    bend, twist = 3.0 * rise - 2.0 * first - last, first + last - 2.0 * rise
+    between = angle[piece] + x * (first + x * (bend + x * twist))
+    return turned_about_tangent(carried, between, (first + x * (2.0 * bend + 3.0 * x * twist)) / h)

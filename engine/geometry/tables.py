@@ -1,8 +1,8 @@
 """Curve knot tables: making them from a parametrised curve, reading between the knots, moving them.
 
 A table has one row per knot (see DEVELOPERS.md): s, r, r', r'', down, down'. Between knots the position is the quintic
-polynomial that takes r, r', r'' of both ends. Its error is h^6/46080 |r^(6)|: a circle cut into pieces of 0.08 rad is met
-within 6e-12 of its radius.
+polynomial that takes r, r', r'' of both ends. Its error is h^6/46080 |r^(6)|: a circle cut into pieces of 0.07 rad is met
+within 3e-12 of its radius.
 """
 
 import math
@@ -13,11 +13,11 @@ from numpy.typing import NDArray
 
 from engine.geometry.pose import Array, Pose, yaw_matrix
 
-PIECE_TURN = 0.08
+PIECE_TURN = 0.07
 """Largest turning of the tangent within one piece, rad."""
 POSITION_ERROR = 2e-11
 """Largest distance between a curve and its table at the middle of a piece, m, where pieces are halved until it fits."""
-BEND_ERROR = 2e-7
+BEND_ERROR = 1e-7
 """Likewise for the second derivative, relative to the largest curvature of the curve."""
 MOST_HALVINGS = 7
 """Pieces are halved at most this often; a curve with a corner would never fit."""
