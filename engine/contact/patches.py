@@ -23,6 +23,10 @@ BOX_MARGIN = 1e-6
 """Every box is this much larger than the wall, m, so that rounding cannot cut a wall out of its own box."""
 
 
+_LATER = np.zeros(6)
+"""Box of a swept patch until all are found at once."""
+
+
 class Law(NamedTuple):
     """Contact law of the ball on one wall; `loss_speed` inf: none, `spin_arm` negative: by Hertz, `contact_modulus` Pa."""
 
@@ -131,19 +135,25 @@ class PatchList:
     ) -> Scene:
         """Pack everything; `gravity` m/s2, `air` density kg/m3 (0: none) and viscosity Pa s."""
         span = np.array(self._span, dtype=np.int64).reshape(-1, 2)
+        knots = np.concatenate([*self._knots, np.zeros((0, 16))])
+        kind, number = np.array(self._kind, dtype=np.int64), np.array(self._number).reshape(-1, 16)
+        box = np.array(self._box, dtype=np.float64).reshape(-1, 6)
+        swept = kind <= SWEPT_OUTSIDE
+        if swept.any():
+            box[swept] = swept_boxes(knots, span[swept, 0], number[swept, 0])
         law = np.zeros((len(self), 8))
         law[:, :7] = [tag.law for tag in self._tag] or np.zeros((0, 7))
         return Scene(
-            kind=np.array(self._kind, dtype=np.int64),
+            kind=kind,
             first=np.ascontiguousarray(span[:, 0]),
             count=np.ascontiguousarray(span[:, 1]),
-            number=np.array(self._number, dtype=np.float64).reshape(-1, 16),
+            number=number,
             link=np.array(self._link, dtype=np.int64).reshape(-1, 6),
             law=law,
             role=np.array([tag.role for tag in self._tag], dtype=np.int64),
             owner=np.array([tag.owner for tag in self._tag], dtype=np.int64),
-            box=np.array(self._box, dtype=np.float64).reshape(-1, 6),
-            knots=np.concatenate([*self._knots, np.zeros((0, 16))]),
+            box=box,
+            knots=knots,
             meridian=np.concatenate([*self._meridian, np.zeros((0, 7))]),
             gravity=np.array(gravity, dtype=np.float64),
             air=np.array(air, dtype=np.float64),
@@ -155,7 +165,7 @@ class PatchList:
         span = (self._knot_count, len(table))
         self._knots.append(table)
         self._knot_count += len(table)
-        return self._add(kind, span, number, tag, swept_box(table, head[0]))
+        return self._add(kind, span, number, tag, _LATER)
 
     def _add(self, kind: int, span: tuple[int, int], number: Array, tag: Tag, box: Array) -> int:
         self._kind.append(kind)
@@ -167,12 +177,14 @@ class PatchList:
         return len(self._kind) - 1
 
 
-def swept_box(table: Array, radius: float) -> Array:
-    """Bounds (6,) of a swept circle: the knots, a chord's sagitta and the radius, m."""
-    longest = float((table[1:, 0] - table[:-1, 0]).max())
-    bend = math.sqrt(float(np.einsum("ij,ij->i", table[:, 7:10], table[:, 7:10]).max()))
-    room = radius + 0.25 * bend * longest**2 + BOX_MARGIN
-    return np.concatenate([table[:, 1:4].min(axis=0) - room, table[:, 1:4].max(axis=0) + room])
+def swept_boxes(knots: Array, first: NDArray[np.int64], radius: Array) -> Array:
+    """Bounds (n, 6) of n swept circles whose knots follow each other from rows `first`: knots, a chord's sagitta and the radius, m."""
+    step = np.diff(knots[:, 0], append=0.0)
+    longest = np.maximum.reduceat(np.maximum(step, 0.0), first)
+    bend = np.sqrt(np.maximum.reduceat(np.einsum("ij,ij->i", knots[:, 7:10], knots[:, 7:10]), first))
+    room = (radius + 0.25 * bend * longest**2 + BOX_MARGIN)[:, None]
+    low, high = np.minimum.reduceat(knots[:, 1:4], first), np.maximum.reduceat(knots[:, 1:4], first)
+    return np.concatenate([low - room, high + room], axis=1)
 
 
 def revolved_box(shape: Revolution) -> Array:
