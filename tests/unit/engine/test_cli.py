@@ -22,6 +22,8 @@ FINDING_KEYS = [
     *("kind", "severity", "where", "segment", "s_m", "t_s"),
     *("value", "limit", "unit", "sentence", "cure"),
 ]
+LAST_SAMPLE = 0.5 * 0.004 / 1.0
+"""The exit speed is that of the last sample before the end, at most 4 mm of 1 m upstream, and v grows with the root of s."""
 COLUMNS = ["t_s", "x_m", "y_m", "z_m", "vx_m_s"]
 
 
@@ -62,7 +64,8 @@ def test_check_agrees_with_the_closed_form(file, capsys):
     main(["check", file(straight_run()), "--json"])
     report = json.loads(capsys.readouterr().out)
     assert report["outcome"] == "arrived"
-    assert report["exit_speed_m_s"] == pytest.approx((2 * 9.80665 * 0.1 / 1.4) ** 0.5, rel=1e-3)
+    ideal = (2 * 9.80665 * 0.1 / 1.4) ** 0.5
+    assert 0.0 <= 1.0 - report["exit_speed_m_s"] / ideal <= LAST_SAMPLE
 
 
 def test_check_covers_every_run_or_the_one_asked_for(file, capsys):
