@@ -23,7 +23,7 @@ FINDING_KEYS = [
     *("value", "limit", "unit", "sentence", "cure"),
 ]
 LAST_SAMPLE = 0.5 * 0.004 / 1.0
-"""The exit speed is that of the last sample before the end, at most 4 mm of 1 m upstream, and v grows with the root of s."""
+"""The exit speed is that of the last sample before the end, at most 4 mm of 1 m upstream; v grows as sqrt(s)."""
 COLUMNS = ["t_s", "x_m", "y_m", "z_m", "vx_m_s"]
 
 
