@@ -205,7 +205,7 @@ def _export(arguments: Arguments) -> int:
     """Write the parts of a design as mesh files."""
     design = _loaded(arguments.file)
     _progress("Making parts")
-    parts = export_parts(lay_out(design), Path(arguments.out), design)
+    parts = export_parts(lay_out(design), Path(arguments.out))
     _progress("")
     if arguments.json:
         _print_json({"parts": [_part_json(part) for part in parts]})
