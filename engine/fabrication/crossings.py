@@ -16,9 +16,9 @@ TOUCHING = 1e-9
 
 @kernel
 def cell_range(low, high, axis, grid):
-    """First and last cell along an axis that the span from `low` to `high` (m) lies in."""
-    first = math.floor((low - grid.low[axis]) / grid.size)
-    last = math.floor((high - grid.low[axis]) / grid.size)
+    """First and last cell along an axis that the span from `low` to `high` (m), a little widened, lies in."""
+    first = math.floor((low - grid.slack - grid.low[axis]) / grid.size)
+    last = math.floor((high + grid.slack - grid.low[axis]) / grid.size)
     top = grid.shape[axis] - 1
     return min(max(first, 0), top), min(max(last, 0), top)
 
@@ -84,7 +84,7 @@ def find_hits(vertices, faces, edges, grid, cells, hits):
                 for z in range(z0, z1 + 1):
                     cell = (x * grid.shape[1] + y) * grid.shape[2] + z
                     for i in range(start[cell], start[cell + 1]):
-                        if meets(vertices, faces, listed[i], p, q):
+                        if meets(vertices, faces, listed[i], p, q, grid.slack):
                             hits[found, 0], hits[found, 1] = e, listed[i]
                             found += 1
                             if found == hits.shape[0]:
@@ -99,7 +99,7 @@ def between(vertices, i, j):
 
 
 @kernel
-def meets(vertices, faces, t, p, q):
+def meets(vertices, faces, t, p, q, slack):
     """Whether the edge from vertex p to q meets triangle t, which must share no corner with it.
 
     With d = q - p, the triangle's plane normal n = e1 x e2 and m = p - a: the edge is at share u = -(m . n)/(d . n)
@@ -110,7 +110,8 @@ def meets(vertices, faces, t, p, q):
         return False
     for axis in range(3):
         low, high = triangle_span(vertices, faces, t, axis)
-        if max(vertices[p, axis], vertices[q, axis]) < low or min(vertices[p, axis], vertices[q, axis]) > high:
+        first, last = min(vertices[p, axis], vertices[q, axis]), max(vertices[p, axis], vertices[q, axis])
+        if last < low - slack or first > high + slack:
             return False
     dx, dy, dz = between(vertices, p, q)
     ux, uy, uz = between(vertices, a, b)

@@ -24,6 +24,8 @@ ENTRIES_PER_TRIANGLE = 24
 """The grid is coarsened until triangles lie in at most this many cells each on average: long ones lie in many."""
 CELLS_PER_TRIANGLE = 8
 """Cells of the grid at most, per triangle."""
+BOX_SLACK = 1e-9
+"""Share of the part's size by which boxes are widened, so that rounding does not hide walls that just touch."""
 MOST_HITS = 16
 """Crossings noted at most; one is enough to refuse a part."""
 END_STEPS = 1
@@ -31,11 +33,12 @@ END_STEPS = 1
 
 
 class Grid(NamedTuple):
-    """Regular cells: `low` (3,) corner m, `size` of a cell m, `shape` (3,)."""
+    """Regular cells: `low` (3,) corner m, `size` of a cell m, `shape` (3,), `slack` m by which boxes are widened."""
 
     low: Array
     size: float
     shape: NDArray[np.int64]
+    slack: float
 
 
 @dataclass(frozen=True)
@@ -223,7 +226,7 @@ def _grid_for(vertices: Array, faces: Faces) -> Grid:
         shape = np.floor(span / size).astype(np.int64) + 1
         entries = float(np.prod(extent / size + 1.0, axis=1).sum())
         if shape.prod() <= CELLS_PER_TRIANGLE * len(faces) + 1 and entries <= ENTRIES_PER_TRIANGLE * len(faces):
-            return Grid(low, size, shape)
+            return Grid(low, size, shape, BOX_SLACK * float(span.max()))
         size *= 1.4
 
 

@@ -23,6 +23,8 @@ ON_AXIS = 1e-9
 """m. A point nearer to the axis than this lies on it."""
 BEND_SAMPLES = 8
 """Places per piece of a meridian where its curvature is read."""
+MOST_RINGS = 4000
+"""Points of a profile at most; each side is compared with every other."""
 NEAR_WALL_SHARE = 0.5
 """Height of a tray's near wall as a share of its drop: it stays below the outlet that the ball comes from."""
 
@@ -80,7 +82,19 @@ def wall_outline(meridian: Array, side: int, wall: float, tolerance: float) -> O
             f"its wall reaches {-other[low, 0] * 1e3:.2f} mm past the axis at s = {places[low] * 1e3:.1f} mm; "
             f"make the wall thinner than {wall * 1e3:.2f} mm or the profile wider there."
         )
+    _check_folds(places, line, other)
     return _closed(places, line, other)
+
+
+def _check_folds(places: Array, line: Array, other: Array) -> None:
+    """Refuse a side whose offset runs backward: two corners nearer to each other than the wall is thick."""
+    ahead = (np.diff(line, axis=0) * np.diff(other, axis=0)).sum(axis=1)
+    worst = int(ahead.argmin())
+    if ahead[worst] < 0.0:
+        raise PartRefusedError(
+            f"its wall meets itself between the corners at s = {places[worst] * 1e3:.1f} mm and "
+            f"s = {places[worst + 1] * 1e3:.1f} mm; make the wall thinner or move the corners apart."
+        )
 
 
 def _sampled(meridian: Array, wall: float, small: float) -> tuple[Array, Array, tuple[Array, Array]]:
@@ -113,8 +127,11 @@ def _meridian_places(part: Array, wall: float, small: float) -> Array:
     density = np.sqrt((curvature + wall * curvature**2) / (8.0 * small)) + 1e-6 / (s[-1] - s[0])
     total = np.concatenate([[0.0], np.cumsum(0.5 * (density[1:] + density[:-1]) * np.diff(s))])
     count = max(1.0, np.ceil(total[-1] - ROUNDING))
-    if count > MOST_TRIANGLES:
-        raise PartRefusedError("its profile bends too sharply for the tolerance of a chord; raise the tolerance.")
+    if count > MOST_RINGS:
+        raise PartRefusedError(
+            f"its profile needs {count:.3g} rings, more than {MOST_RINGS}; "
+            "raise the tolerance of a chord or make it smaller."
+        )
     places = np.interp(np.linspace(0.0, total[-1], int(count) + 1), total, s)
     places[0], places[-1] = s[0], s[-1]
     return places
@@ -137,8 +154,9 @@ def _check_bends(meridian: Array, side: int, wall: float) -> None:
         worst = int(toward.argmax())
         if 1.0 - wall * toward[worst] <= 0.0:
             raise PartRefusedError(
-                f"its wall of {wall * 1e3:.2f} mm folds over itself at s = {s[worst] * 1e3:.1f} mm, where the profile bends "
-                f"round a radius of {1e3 / toward[worst]:.2f} mm; make the wall thinner than that or the radius larger."
+                f"its wall of {wall * 1e3:.2f} mm folds over itself at s = {s[worst] * 1e3:.1f} mm, where the profile "
+                f"bends round a radius of {1e3 / toward[worst]:.2f} mm; "
+                "make the wall thinner than that or the radius larger."
             )
 
 
@@ -202,6 +220,7 @@ def revolve(outline: Outline, stand: Stand, tolerance: float) -> Mesh:
     ----------
     outline : Outline
     stand : Stand
+        Origin and axis.
     tolerance : float
         Largest distance between solid and surface, m; half of it is spent round the axis.
     """
@@ -273,12 +292,12 @@ def plate(
         edges = [np.array([0.0, face.length]), np.array([-half, half]), np.array([-thickness, 0.0])]
         return _stood(blocks(edges, np.ones((1, 1, 1), dtype=np.bool_)), face)
     corners = np.array([[face.length, half], [0.0, half], [0.0, -half], [face.length, -half]])
-    room = np.abs(corners - hole[:2]).min()
+    room = min(hole[0], face.length - hole[0], half - abs(hole[1]))
     quarter = math.ceil(ring_count(hole[2], RING_SHARE * tolerance) / 4)
     radius = hole[2] / math.cos(math.pi / (4 * quarter))
     if not 0.0 < radius < room:
         raise PartRefusedError(
-            f"its hole of radius {hole[2] * 1e3:.2f} mm reaches the edge, {room * 1e3:.2f} mm from its middle; "
+            f"its hole of radius {hole[2] * 1e3:.2f} mm reaches past the edge, {room * 1e3:.2f} mm from its middle; "
             "make the hole smaller or move it inward."
         )
     angle = 0.5 * math.pi * np.arange(4 * quarter) / quarter
@@ -290,7 +309,7 @@ def plate(
 
 
 def _holed_faces(quarter: int) -> Faces:
-    """Triangles of a rectangle (corners counter-clockwise from +x +y) with a ring of 4 `quarter` points, and its sides."""
+    """Triangles of a rectangle, corners counter-clockwise from +x +y, with a ring of 4 `quarter` points; its sides."""
     n = 4 + 4 * quarter
     ring = 4 + np.arange(4 * quarter, dtype=np.int64)
     corner = np.repeat(np.arange(4, dtype=np.int64), quarter)

@@ -28,8 +28,8 @@ WALL_SHARE = 0.25
 """The tolerance is at most this share of the wall, so that the two skins cannot meet (measured at 1: they do)."""
 SAMPLES_PER_PIECE = 4
 """Places per piece of the table where curvature and twist are read."""
-MOST_TRIANGLES = 20_000_000
-"""A part of more triangles is refused: its file would take a gigabyte."""
+MOST_TRIANGLES = 5_000_000
+"""A part of more triangles is refused: its file would take 250 MB and its inspection a gigabyte of memory."""
 ROUNDING = 1e-9
 """Share of a step by which a count may exceed a whole number and still be rounded down."""
 
