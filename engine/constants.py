@@ -22,8 +22,9 @@ YOUNG_SLIP = 1e-4
 the slip relaxes to. Measured on helical tubes: 5e-9 m of error after seconds of slip; 1e-2 m/s gives 5e-6 m."""
 STOPPED_SLIP = 1e-8
 """m/s. Slip slower than this has ended. Larger values move the time of grip."""
-STOPPED_SPEED = 1e-8
-"""m/s. A ball that rolls slower than this against a rolling loss has stopped."""
+NOISE_SHARE = 30.0
+"""Slip and rolling speed count as stopped below this many times the local error of a step: what is left is error, not
+motion, and a step that resolved it would crawl (a trough run took 2 000 000 steps at a slip of 1.25e-8 m/s)."""
 STOPPED_SPIN = 1e-7
 """rad/s. Spin about the normal slower than this counts as none when spin friction acts."""
 

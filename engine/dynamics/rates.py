@@ -15,7 +15,6 @@ curvature feeds into the spin about the normal.
 import math
 from typing import NamedTuple
 
-from engine.constants import STOPPED_SPEED
 from engine.contact.laws import contact_radius, drag_per_speed, lift_per_mass, rolling_lever, spin_lever
 from engine.contact.query import foot_on
 from engine.contact.surface import MU_KINETIC, Foot
@@ -185,13 +184,6 @@ def contact_rates(walls, ball, mode, y, guess, out):
     out[12] = lost_air
     friction = math.sqrt(qx * qx + qy * qy + qz * qz)
     return Contact(foot, force, need, friction, ux, uy, uz, slip, spin, feed, hold, lever, rx, ry, rz)
-
-
-@kernel
-def has_stopped(contact, ball):
-    """Return whether a rolling ball is so slow that its rolling loss may hold it."""
-    size2 = contact.rx * contact.rx + contact.ry * contact.ry + contact.rz * contact.rz
-    return contact.loss > 0.0 and math.sqrt(size2) * ball.radius < STOPPED_SPEED
 
 
 @kernel

@@ -21,6 +21,8 @@ SHARPEST_CORNER = 0.1
 """1 + cos of the turn at a corner below which its offset lines meet too far off (a turn of 154 degrees)."""
 ON_AXIS = 1e-9
 """m. A point nearer to the axis than this lies on it."""
+SHORTEST_PART = 1e-8
+"""m. A smooth part of a meridian shorter than this (a fillet of nothing) is left out: what meets there is a corner."""
 BEND_SAMPLES = 8
 """Places per piece of a meridian where its curvature is read."""
 MOST_RINGS = 4000
@@ -101,7 +103,7 @@ def _sampled(meridian: Array, wall: float, small: float) -> tuple[Array, Array, 
     """Profile lengths (n,), points (n, 2), left normals before and after each (n, 2); chords within `small`."""
     places, points, tangents = [], [], []
     for part in smooth_parts(meridian):
-        if len(part) < 2:
+        if part[-1, 0] - part[0, 0] < SHORTEST_PART:
             continue
         s = _meridian_places(part, wall, small)
         point, slope, _ = at_length(part, s)
@@ -146,7 +148,7 @@ def _between_knots(part: Array) -> Array:
 def _check_bends(meridian: Array, side: int, wall: float) -> None:
     """Refuse a wall thicker than the radius it bends round: J = 1 - k w > 0, k positive toward the wall."""
     for part in smooth_parts(meridian):
-        if len(part) < 2:
+        if part[-1, 0] - part[0, 0] < SHORTEST_PART:
             continue
         s = _between_knots(part)
         _, slope, bend = at_length(part, s)

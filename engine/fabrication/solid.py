@@ -3,8 +3,8 @@
 from engine.errors import PartRefusedError
 from engine.fabrication.inspection import Expected, bend_problems, inspect, meeting_problems
 from engine.fabrication.mesh import Array, Mesh
-from engine.fabrication.revolve import Face, Stand, plate, tray, wall_of_revolution
-from engine.fabrication.sweep import Profile, finest, sweep, trough_profile, tube_profile
+from engine.fabrication.revolve import ON_AXIS, Face, Stand, plate, tray, wall_of_revolution
+from engine.fabrication.sweep import WALL_SHARE, Profile, finest, mouth_width, sweep, trough_profile, tube_profile
 from engine.model.design import Process
 from engine.model.elements import SEGMENTS, Deck, Dome, Gap, Segment, Tray, Trough, Tube, Vessel
 from engine.placement import Placed
@@ -75,11 +75,13 @@ def _known(numbers: Array | None) -> Array:
 
 def profile_of(element: Segment, tolerance: float) -> tuple[Profile, float]:
     """Cross section of a segment and the tolerance (m) that its wall leaves."""
-    section = element.section
+    section, bore = element.section, 0.5 * element.section.bore
     fine = finest(tolerance, section.wall)
     if isinstance(section, Trough):
-        return trough_profile(0.5 * section.bore, section.wall, (section.lip_angle, section.lip_radius), fine), fine
-    return tube_profile(0.5 * section.bore, section.wall, fine), fine
+        lip = (section.lip_angle, section.lip_radius)
+        profile = trough_profile(bore, section.wall, lip, fine)
+        return profile, min(fine, WALL_SHARE * mouth_width(bore, lip))
+    return tube_profile(bore, section.wall, fine), fine
 
 
 def refusals(placed: Placed, mesh: Mesh, process: Process) -> list[str]:
@@ -110,4 +112,4 @@ def _expected(placed: Placed) -> Expected:
         return Expected(0 if isinstance(element.section, Tube) else 2)
     if isinstance(element, Deck | Tray | Dome) or placed.meridian is None:
         return Expected(2)
-    return Expected(2 if placed.meridian[-1, 1] == 0.0 else 0)
+    return Expected(2 if placed.meridian[-1, 1] < ON_AXIS else 0)

@@ -15,6 +15,7 @@ import math
 from typing import NamedTuple
 
 import numpy as np
+from numpy.typing import NDArray
 
 from engine.errors import PartRefusedError
 from engine.fabrication.mesh import Array, Faces, Mesh, band
@@ -25,7 +26,9 @@ RING_SHARE = 0.5
 LEAST_RING = 12
 """Fewest vertices of a full ring: fewer no longer look round, even on a coarse view."""
 WALL_SHARE = 0.25
-"""The tolerance is at most this share of the wall, so that the two skins cannot meet (measured at 1: they do)."""
+"""The tolerance is at most this share of the wall and of a mouth, so that skins cannot meet (measured at 1: they do)."""
+LEAST_MOUTH = 2e-4
+"""m. A trough whose lips come nearer to each other than this is a tube with a scratch; it is refused."""
 SAMPLES_PER_PIECE = 4
 """Places per piece of the table where curvature and twist are read."""
 MOST_TRIANGLES = 5_000_000
@@ -110,24 +113,50 @@ def trough_profile(bore_radius: float, wall: float, lip: tuple[float, float], to
     small = RING_SHARE * finest(tolerance, wall)
     _check_lips(bore_radius, wall, angle, radius)
     inner_lip, outer_lip, outer_angle = _lip(bore_radius, wall, lip, small)
-    steps = max(2, math.ceil(2.0 * angle / (2.0 * math.pi / ring_count(bore_radius + wall, small)) - ROUNDING))
-    inner = np.concatenate([inner_lip, _bore_arc(bore_radius, angle, steps)])
-    outer_turn = outer_angle * (1.0 - 2.0 * np.arange(1, steps + 1) / (steps + 1))
-    outside = (bore_radius + wall) * np.stack([np.cos(outer_turn), np.sin(outer_turn)], axis=1)
+    steps = max(2, math.ceil(angle / math.pi * ring_count(bore_radius + wall, small) - ROUNDING))
+    turn = angle * (1.0 - (2.0 * np.arange(steps) + 1.0) / steps)
+    beside = np.abs(turn) < outer_angle * (1.0 - ROUNDING)
+    bore = bore_radius / math.cos(angle / steps) * _on_circle(turn)
     mirror = np.array([1.0, -1.0])
-    inner = np.concatenate([inner, inner_lip[::-1] * mirror])
-    outer = np.concatenate([outer_lip, outside, outer_lip[::-1] * mirror])
-    return _ladder(inner, outer)
+    inner = np.concatenate([inner_lip, bore, inner_lip[::-1] * mirror])
+    outer = np.concatenate([outer_lip, (bore_radius + wall) * _on_circle(turn[beside]), outer_lip[::-1] * mirror])
+    return _filled(inner, outer, _rungs(len(inner_lip), turn, beside))
+
+
+def _on_circle(turn: Array) -> Array:
+    """Points (n, 2) of the unit circle at wall angles (n,)."""
+    return np.stack([np.cos(turn), np.sin(turn)], axis=1)
+
+
+def _rungs(lip: int, turn: Array, beside: NDArray[np.bool_]) -> NDArray[np.int64]:
+    """Pairs (n, 2) of places on the inner and outer chain that are joined across the wall, from one tip to the other.
+
+    Lips are joined point by point; a point of the bore with the outside point at its own wall angle, or where a bead
+    takes that place with the end of the bead.
+    """
+    half, steps, kept = np.arange(lip, dtype=np.int64), len(turn), int(beside.sum())
+    across = lip - 1 + np.cumsum(beside) + (~beside & (turn < 0.0))
+    inner = np.concatenate([half, lip + np.arange(steps), lip + steps + half])
+    return np.stack([inner, np.concatenate([half, across, lip + kept + half])], axis=1)
+
+
+def mouth_width(bore_radius: float, lip: tuple[float, float]) -> float:
+    """Clear width (m) between the two lips of a trough, as wide as the bore where the lips do not lean toward each other."""
+    angle, radius = lip
+    if angle <= 0.5 * math.pi:
+        return 2.0 * bore_radius
+    return 2.0 * ((bore_radius + radius) * math.sin(angle) - radius)
 
 
 def _check_lips(bore_radius: float, wall: float, angle: float, radius: float) -> None:
     """Refuse a mouth that its own lips close, or beads that meet under the trough."""
-    half_mouth = math.pi - angle
+    half_mouth, clear = math.pi - angle, mouth_width(bore_radius, (angle, radius))
     bead = math.asin(min(1.0, radius / (bore_radius + radius)))
-    if bead >= half_mouth:
+    if bead >= half_mouth or clear < LEAST_MOUTH:
         raise PartRefusedError(
-            f"its lips, rounded by {radius * 1e3:.2f} mm, close the mouth of {math.degrees(2.0 * half_mouth):.1f} deg; "
-            f"make the lip radius smaller or the opening wider than {math.degrees(2.0 * bead):.1f} deg."
+            f"its lips, rounded by {radius * 1e3:.2f} mm, close the mouth of {math.degrees(2.0 * half_mouth):.1f} deg "
+            f"to less than {LEAST_MOUTH * 1e3:g} mm; make the lip radius smaller or the opening wider than "
+            f"{math.degrees(2.0 * bead + LEAST_MOUTH / bore_radius):.1f} deg."
         )
     if radius > 0.5 * wall and bead >= angle:
         raise PartRefusedError(
@@ -160,28 +189,22 @@ def _lip(bore_radius: float, wall: float, lip: tuple[float, float], small: float
     return rim[:split][::-1], rim[split:], math.atan2(end[1], end[0])
 
 
-def _bore_arc(radius: float, angle: float, steps: int) -> Array:
-    """Circumscribed corners (steps, 2) from +angle to -angle; with both ends on the circle every chord touches it."""
-    step = 2.0 * angle / steps
-    turn = angle - step * (np.arange(steps) + 0.5)
-    return radius / math.cos(0.5 * step) * np.stack([np.cos(turn), np.sin(turn)], axis=1)
-
-
-def _ladder(inner: Array, outer: Array) -> Profile:
-    """Profile between two chains of equally many points, filled rung by rung."""
-    k = len(inner)
+def _filled(inner: Array, outer: Array, rungs: NDArray[np.int64]) -> Profile:
+    """Profile between two chains, filled from rung to rung: two triangles, or one where a rung keeps one of its ends."""
     points = np.concatenate([inner, outer[::-1]])
-    rung = np.arange(k, dtype=np.int64)[None]
-    cap = band(rung, 2 * k - 1 - rung, closed=False)
+    here, there = rungs[:, 0], len(points) - 1 - rungs[:, 1]
+    first = np.stack([here[:-1], here[1:], there[1:]], axis=1)[np.diff(here) != 0]
+    second = np.stack([here[:-1], there[1:], there[:-1]], axis=1)[np.diff(there) != 0]
+    cap = np.concatenate([first, second])
     x, y = points[:, 0], points[:, 1]
     if float((x * np.roll(y, -1) - np.roll(x, -1) * y).sum()) < 0.0:
-        points, cap = points[::-1].copy(), (2 * k - 1 - cap)
+        points, cap = points[::-1].copy(), len(points) - 1 - cap
     corner = points[cap]
     first, second = corner[:, 1] - corner[:, 0], corner[:, 2] - corner[:, 0]
     if float((first[:, 0] * second[:, 1] - first[:, 1] * second[:, 0]).sum()) < 0.0:
         cap = cap[:, ::-1]
     reach = float(np.sqrt((points * points).sum(axis=1)).max())
-    return Profile(points, (2 * k,), np.ascontiguousarray(cap, dtype=np.int32), reach)
+    return Profile(points, (len(points),), np.ascontiguousarray(cap, dtype=np.int32), reach)
 
 
 # -- stations -------------------------------------------------------------------------------------

@@ -8,7 +8,7 @@ from typing import NamedTuple
 
 import numpy as np
 
-from engine.constants import ROOT_SETTLED, ROOT_TURNS, STOPPED_SLIP, STOPPED_SPEED, YOUNG_SLIP
+from engine.constants import NOISE_SHARE, ROOT_SETTLED, ROOT_TURNS, STOPPED_SLIP, YOUNG_SLIP
 from engine.contact.query import FAR, boundary, foot_on
 from engine.contact.surface import MU_KINETIC, MU_STATIC
 from engine.dynamics.rates import rates
@@ -18,10 +18,13 @@ from engine.kernel import kernel
 
 GUARDS = 11
 LIFT, CONE, SLIP, STOP, SPIN, SIDE = 0, 1, 2, 3, 4, 5
+TURN_SHARE = 10.0
+"""A velocity that has turned by a right angle within a step is stopped if it is below this many times `still`."""
 
 
 class Heading(NamedTuple):
-    """Directions at the start of a step: of the slip velocity and of the rolling spin (zero when there is none)."""
+    """Directions at the start of a step, of the slip velocity and of the rolling spin (zero when there is none), and the
+    speed below which either counts as stopped, m/s."""
 
     ux: float
     uy: float
@@ -29,17 +32,25 @@ class Heading(NamedTuple):
     rx: float
     ry: float
     rz: float
+    still: float
 
 
 @kernel
-def heading_of(contact, ball):
-    """Return the unit slip and rolling directions of a contact."""
+def still_speed(tolerance, speed, r):
+    """Return the speed that cannot be told from none at this tolerance, m/s."""
+    noise = NOISE_SHARE * tolerance * max(speed, np.sqrt(10.0 * r))
+    return min(0.1 * YOUNG_SLIP, max(STOPPED_SLIP, noise))
+
+
+@kernel
+def heading_of(contact, ball, still):
+    """Return the unit slip and rolling directions of a contact. `still` m/s counts as stopped."""
     u = contact.slip
-    ux, uy, uz = (contact.ux / u, contact.uy / u, contact.uz / u) if u > STOPPED_SLIP else (0.0, 0.0, 0.0)
+    ux, uy, uz = (contact.ux / u, contact.uy / u, contact.uz / u) if u > still else (0.0, 0.0, 0.0)
     size = np.sqrt(contact.rx * contact.rx + contact.ry * contact.ry + contact.rz * contact.rz)
-    if size * ball.radius > STOPPED_SPEED:
-        return Heading(ux, uy, uz, contact.rx / size, contact.ry / size, contact.rz / size)
-    return Heading(ux, uy, uz, 0.0, 0.0, 0.0)
+    if size * ball.radius > still:
+        return Heading(ux, uy, uz, contact.rx / size, contact.ry / size, contact.rz / size, still)
+    return Heading(ux, uy, uz, 0.0, 0.0, 0.0, still)
 
 
 @kernel
@@ -56,7 +67,7 @@ def fill_guards(walls, ball, mode, contact, heading, out):
         has_way = heading.rx != 0.0 or heading.ry != 0.0 or heading.rz != 0.0
         if contact.loss > 0.0 and has_way:
             along = contact.rx * heading.rx + contact.ry * heading.ry + contact.rz * heading.rz
-            out[STOP] = along * ball.radius - STOPPED_SPEED
+            out[STOP] = along * ball.radius - heading.still
         if contact.hold > 0.0:
             out[SPIN] = contact.hold - abs(contact.feed) if mode.spin == 0 else mode.spin * contact.spin
     elif mode.regime == SLIPPING:
@@ -73,7 +84,7 @@ def fill_slip_guards(law, mode, contact, heading, out):
         out[SLIP] = YOUNG_SLIP - contact.slip
     elif heading.ux != 0.0 or heading.uy != 0.0 or heading.uz != 0.0:
         along = contact.ux * heading.ux + contact.uy * heading.uy + contact.uz * heading.uz
-        out[SLIP] = along - STOPPED_SLIP
+        out[SLIP] = along - heading.still
 
 
 @kernel
@@ -166,13 +177,13 @@ def locate_touch(walls, ball, patch, work, high):
 
 
 @kernel
-def is_end_of_turn(mode, contact, ball, slot):
+def is_end_of_turn(mode, contact, ball, slot, still):
     """Return whether a slip or stop guard marks a true end: the vector itself is near zero, not just turned round."""
     if slot == SLIP and mode.young == 0:
-        return contact.slip < 100.0 * STOPPED_SLIP
+        return contact.slip < TURN_SHARE * still
     if slot == STOP:
         size2 = contact.rx * contact.rx + contact.ry * contact.ry + contact.rz * contact.rz
-        return np.sqrt(size2) * ball.radius < 100.0 * STOPPED_SPEED
+        return np.sqrt(size2) * ball.radius < TURN_SHARE * still
     return True
 
 
@@ -194,6 +205,6 @@ def first_guard(walls, ball, mode, work, step):
         share = locate_guard(walls, ball, mode, work, (high, j, work.before[j], piece, q, heading))
         dense_at(work.dense, share, work.trial)
         there = rates(walls, ball, mode, work.trial, (piece, q), work.spare)
-        if is_end_of_turn(mode, there, ball, j):
+        if is_end_of_turn(mode, there, ball, j, heading.still):
             theta, slot = share, j
     return theta, slot

@@ -19,7 +19,7 @@ from engine.contact.query import foot_on, nearest_wall
 from engine.dynamics.phases import mode_on, put_back
 from engine.dynamics.rates import rates
 from engine.dynamics.state import FLIGHT, ROLLING, SLIPPING, STATE, Mode
-from engine.integrate.events import fill_guards, first_guard, heading_of, locate_touch
+from engine.integrate.events import fill_guards, first_guard, heading_of, locate_touch, still_speed
 from engine.integrate.log import MARK, SAMPLE, room, write_mark, write_sample
 from engine.integrate.outcome import GOES_ON, QUIET, SLIP_ONSET, after_guard, after_touch
 from engine.integrate.step import dense_at, fill_dense, new_work, next_size, try_step, warm_start
@@ -200,7 +200,7 @@ def solve(walls, ball, start, options, asked, cancel):
         if status != GOES_ON:
             break
         guess = warm_start(walls, mode, contact.foot)
-        heading = heading_of(contact, ball)
+        heading = heading_of(contact, ball, still_speed(options.tolerance, speed_of(y), ball.radius))
         fill_guards(walls, ball, mode, contact, heading, work.before)
         h = min(h, options.end - t, longest(walls, mode, y, free, REACH_SHARE * ball.radius))
         h, h_next, contact = fit_step(walls, ball, mode, work, (h, options.tolerance, guess[0], guess[1]))
