@@ -5,7 +5,7 @@ from typing import TYPE_CHECKING, NamedTuple
 
 import numpy as np
 
-from engine.constants import GRAVITY
+from engine.constants import STANDARD_GRAVITY
 from engine.integrate.result import STATUS_SENTENCES, Regime
 from engine.model.base import Frozen
 from engine.model.elements import ElementBase, SegmentBase
@@ -155,7 +155,7 @@ def figures_of(roll: "Roll", element: ElementBase) -> list[Figure]:
         side = "" if abs(climb) < DEGREE else (" left" if climb > 0.0 else " right")
         figures.append(Figure("Climbs the wall to", f"{math.degrees(abs(climb)):.0f}°{side}"))
     if len(touching):
-        weight = roll.ball.mass * GRAVITY
+        weight = roll.ball.mass * STANDARD_GRAVITY
         figures.append(Figure("Load at most", f"{float(track.normal_force[touching].max()) / weight:.2f} g"))
     margins = track.margin[rows]
     if not np.isnan(margins).all():

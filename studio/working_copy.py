@@ -2,6 +2,7 @@
 
 import json
 import os
+import time
 from pathlib import Path
 from typing import NamedTuple
 
@@ -69,7 +70,7 @@ class WorkingCopy(QObject):
     def __init__(self, workspace: Workspace, parent: QObject | None = None) -> None:
         super().__init__(parent if parent is not None else workspace)
         self._workspace = workspace
-        self._copy = copies_folder() / f"{os.getpid()}.json"
+        self._copy = copies_folder() / f"{os.getpid()}-{time.time_ns()}.json"
         self._note = self._copy.with_suffix(".note")
         self._lock = lock_of(self._copy)
         self.failure = ""
