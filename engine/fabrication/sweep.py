@@ -26,7 +26,7 @@ RING_SHARE = 0.5
 LEAST_RING = 12
 """Fewest vertices of a full ring: fewer no longer look round, even on a coarse view."""
 WALL_SHARE = 0.25
-"""The tolerance is at most this share of the wall and of a mouth, so that skins cannot meet (measured at 1: they do)."""
+"""The tolerance is at most this share of the wall and of a mouth, so that skins cannot meet (at 1 they do)."""
 LEAST_MOUTH = 2e-4
 """m. A trough whose lips come nearer to each other than this is a tube with a scratch; it is refused."""
 SAMPLES_PER_PIECE = 4
@@ -141,7 +141,7 @@ def _rungs(lip: int, turn: Array, beside: NDArray[np.bool_]) -> NDArray[np.int64
 
 
 def mouth_width(bore_radius: float, lip: tuple[float, float]) -> float:
-    """Clear width (m) between the two lips of a trough, as wide as the bore where the lips do not lean toward each other."""
+    """Clear width (m) between the lips of a trough; the bore where they do not lean toward each other."""
     angle, radius = lip
     if angle <= 0.5 * math.pi:
         return 2.0 * bore_radius
@@ -190,7 +190,7 @@ def _lip(bore_radius: float, wall: float, lip: tuple[float, float], small: float
 
 
 def _filled(inner: Array, outer: Array, rungs: NDArray[np.int64]) -> Profile:
-    """Profile between two chains, filled from rung to rung: two triangles, or one where a rung keeps one of its ends."""
+    """Profile between two chains, filled from rung to rung: two triangles, or one where a rung keeps an end."""
     points = np.concatenate([inner, outer[::-1]])
     here, there = rungs[:, 0], len(points) - 1 - rungs[:, 1]
     first = np.stack([here[:-1], here[1:], there[1:]], axis=1)[np.diff(here) != 0]

@@ -47,6 +47,8 @@ def profiles() -> list[Profile]:
         trough_profile(BORE, WALL, (1.2, 0.0), TOLERANCE),
         trough_profile(BORE, WALL, (2.4, 0.5 * WALL), TOLERANCE),
         trough_profile(BORE, WALL, (1.9, WALL), TOLERANCE),
+        trough_profile(0.0119, 0.0012, (1.77, 0.0044), TOLERANCE),
+        trough_profile(0.025, 0.0002, (1.6, 0.0049), TOLERANCE),
     ]
 
 
