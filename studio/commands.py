@@ -27,7 +27,7 @@ class EditCommand(QUndoCommand):
         """Number that commands which may merge share."""
         return zlib.crc32(self.merge_key.encode()) & MERGE_IDS if self.merge_key else -1
 
-    def mergeWith(self, other: QUndoCommand) -> bool:  # noqa: N802 (name given by Qt)
+    def mergeWith(self, other: QUndoCommand) -> bool:
         """Take in a later step with the same key."""
         if not isinstance(other, EditCommand) or other.merge_key != self.merge_key or not self.merge_key:
             return False

@@ -1,22 +1,20 @@
 """Qt item models: the findings of the present roll, the elements of the run."""
 
-from typing import TYPE_CHECKING, Any, NamedTuple
+import math
+from typing import Any, NamedTuple
 
 from PySide6.QtCore import QAbstractListModel, QModelIndex, QObject, QPersistentModelIndex, Qt, Slot
 
-from studio.words import element_words
+from engine.findings.finding import Finding, Severity
+from studio.words import finding_title
 from studio.workspace import Workspace
-
-if TYPE_CHECKING:
-    from engine.findings.finding import Finding
 
 Index = QModelIndex | QPersistentModelIndex
 
-SHAPES = {"fails": "triangle", "fail": "triangle", "failure": "triangle", "warning": "diamond", "thin": "diamond"}
-"""Shape by severity: what is not listed is a note, a circle."""
+SHAPES = {Severity.FAILS: "triangle", Severity.THIN: "diamond", Severity.NOTE: "circle"}
 TOKENS = {"triangle": "fails", "diamond": "warning", "circle": "soft"}
 """Colour token by shape."""
-SPOKEN = {"triangle": "Fails", "diamond": "Thin margin", "circle": "Note"}
+SPOKEN = {"triangle": "Fails", "diamond": "Thin", "circle": "Note"}
 """Word by shape, for screen readers and tips."""
 
 
@@ -31,20 +29,15 @@ class FindingRow(NamedTuple):
     time: float | None
 
 
-def finding_row(finding: "Finding", workspace: Workspace) -> FindingRow:
+def finding_row(finding: Finding, workspace: Workspace) -> FindingRow:
     """Row of one finding."""
-    entry = finding.as_json()
-    element = workspace.element(entry["segment"] or "")
-    where = element_words(workspace, element) if element is not None else (entry["where"] or "")
-    kind = str(entry.get("kind", "")).replace("_", " ")
-    title = str(entry.get("title") or f"{kind} {('in ' + where) if where else ''}").strip()
     return FindingRow(
-        shape=SHAPES.get(str(entry["severity"]).lower(), "circle"),
-        title=title[:1].upper() + title[1:],
-        sentence=entry["sentence"],
-        cure=entry["cure"] or "",
-        element=element.id if element is not None else "",
-        time=entry.get("t_s", entry.get("time_s")),
+        shape=SHAPES[finding.severity],
+        title=finding_title(workspace, finding),
+        sentence=finding.sentence,
+        cure=finding.cure,
+        element=finding.segment if workspace.element(finding.segment) is not None else "",
+        time=finding.t if math.isfinite(finding.t) else None,
     )
 
 
@@ -69,7 +62,7 @@ class FindingsModel(QAbstractListModel):
             self.rows = rows
             self.endResetModel()
 
-    def rowCount(self, parent: Index = QModelIndex()) -> int:  # noqa: N802, B008 (signature given by Qt)
+    def rowCount(self, parent: Index = QModelIndex()) -> int:  # noqa: B008 (default given by Qt)
         """Return the number of findings."""
         return 0 if parent.isValid() else len(self.rows)
 

@@ -1,4 +1,4 @@
-"""Edits that the window offers: add, duplicate, remove, move, change the kind of a part, bank for the arriving speed."""
+"""Edits that the window offers: add, duplicate, remove, move, another kind of a part, bank for the speed."""
 
 import math
 from typing import TYPE_CHECKING, Any
@@ -20,6 +20,7 @@ from engine.model.edits import (
     replace_element,
 )
 from engine.model.elements import Bend, ElementBase, Helix, SegmentBase, Straight, Tray, Trough, Tube
+from studio.words import kind_words
 
 if TYPE_CHECKING:
     from studio.workspace import Workspace
@@ -32,14 +33,20 @@ LEAST_SPEED = 0.02
 
 def starting_design() -> Design:
     """New design: one run with a straight, so that there is something to roll and to continue from."""
-    run = Run(id="run1", start=FreeStart(position=(0.0, 0.0, 1.0)), elements=(Straight(id="straight1", grade=0.05),))
+    run = Run(
+        id="run1",
+        start=FreeStart(position=(0.0, 0.0, 1.0)),
+        elements=(Straight(id="straight1", name="Straight 1", grade=0.05),),
+    )
     return Design(id="design", runs=(run,))
 
 
 def new_element(workspace: "Workspace", kind: str, before: ElementBase | None) -> ElementBase:
     """Element of a kind, fitted to the one it follows: same cross section, curvature and grade where it has them."""
     design = workspace.design
-    fields: dict[str, Any] = {"kind": kind, "id": free_id(design, STEMS.get(kind, kind))}
+    stem = STEMS.get(kind, kind)
+    key = free_id(design, stem)
+    fields: dict[str, Any] = {"kind": kind, "id": key, "name": f"{kind_words(kind)} {key.removeprefix(stem)}"}
     if isinstance(before, SegmentBase):
         model = type(make_element(fields))
         if "section" in model.model_fields:
@@ -80,7 +87,9 @@ def duplicate_elements(workspace: "Workspace") -> tuple[Design, list[str]]:
     after = chosen[-1].id
     for element in chosen:
         stem = element.id.rstrip("0123456789") or element.kind
-        copy = element.model_copy(update={"id": free_id(design, stem), "name": ""})
+        key = free_id(design, stem)
+        name = f"{kind_words(element.kind)} {key.removeprefix(stem)}"
+        copy = element.model_copy(update={"id": key, "name": name})
         design = insert_element(design, run.id, copy, after)
         after = copy.id
         made.append(copy.id)
@@ -134,7 +143,7 @@ def part_of_kind(workspace: "Workspace", present: Any, value: Any) -> Any:
 
 
 def bank_for_speed(workspace: "Workspace", element: ElementBase) -> Design | None:
-    """Design in which a trough bends with the bank that carries the ball on its lowest line; None where it does not apply.
+    """Design with the bank that keeps the ball on the lowest line of a trough bend; None where that does not apply.
 
     On a bend of radius R at speed v the load leans outward by atan(v^2/(g R)); the bank turns the lowest line as far.
     A turn to the left (positive) leans it to the right, which is a negative bank. The speed is the root of the mean

@@ -9,6 +9,8 @@ from typing import Literal
 from PySide6.QtCore import QObject, Signal
 from PySide6.QtGui import QColor, QPalette
 
+from studio.resources import ICONS
+
 ThemeName = Literal["light", "dark"]
 
 LEAST_CONTRAST = 4.5
@@ -66,7 +68,11 @@ TOKENS: Mapping[str, Mapping[str, str]] = {"light": LIGHT, "dark": DARK}
 
 GROUNDS = ("paper", "sheet", "panel", "field")
 TEXT_PAIRS: tuple[tuple[str, str], ...] = (
-    *((text, ground) for text in ("ink", "soft", "accent", "second", "warning", "fails", "clears") for ground in GROUNDS),
+    *(
+        (text, ground)
+        for text in ("ink", "soft", "accent", "second", "warning", "fails", "clears")
+        for ground in GROUNDS
+    ),
     ("ink", "hover"),
     ("soft", "hover"),
     ("accent", "accent_bg"),
@@ -168,6 +174,8 @@ class Theme(QObject):
         text = _SHEET
         for token in sorted(TOKENS[self._name], key=len, reverse=True):
             text = text.replace(f"@{token};", f"{self.hex(token)};").replace(f"@{token} ", f"{self.hex(token)} ")
+        for picture in ("arrow", "check"):
+            text = text.replace(f"@{picture})", f"{(ICONS / f'{picture}-{self._name}.svg').as_posix()})")
         return text
 
 
@@ -192,19 +200,18 @@ QLabel#verdict[state="thin"] { color: @warning; background: @warning_bg; }
 QLabel#verdict[state="fails"] { color: @fails; background: @fails_bg; }
 QLabel#verdict[state="none"] { color: @soft; background: @hover; }
 QLineEdit, QComboBox, QPlainTextEdit { background: @field; border: 1px solid @line; border-radius: 3px;
-  padding: 3px 6px; selection-background-color: @accent; selection-color: @selection_text; }
+  padding: 2px 6px; selection-background-color: @accent; selection-color: @selection_text; }
 QLineEdit:focus, QComboBox:focus, QPlainTextEdit:focus { border: 1px solid @accent; }
 QLineEdit[wrong="true"] { border: 1px solid @fails; }
 QComboBox::drop-down { border: none; width: 18px; }
-QComboBox::down-arrow { image: none; border-left: 4px solid transparent; border-right: 4px solid transparent;
-  border-top: 5px solid @soft; margin-right: 6px; }
+QComboBox::down-arrow { image: url(@arrow); width: 10px; height: 6px; margin-right: 8px; }
 QComboBox QAbstractItemView { background: @sheet; border: 1px solid @line; selection-background-color: @hover;
   selection-color: @ink; outline: none; }
 QCheckBox { spacing: 6px; background: transparent; }
 QCheckBox::indicator { width: 13px; height: 13px; border: 1px solid @soft; border-radius: 2px; background: @field; }
-QCheckBox::indicator:checked { background: @accent; border: 1px solid @accent; }
+QCheckBox::indicator:checked { background: @accent; border: 1px solid @accent; image: url(@check); }
 QCheckBox::indicator:focus { border: 1px solid @accent; }
-QPushButton { background: @panel; border: 1px solid @line; border-radius: 3px; padding: 5px 12px; }
+QPushButton { background: @panel; border: 1px solid @line; border-radius: 3px; padding: 4px 12px; }
 QPushButton:hover { background: @hover; }
 QPushButton:focus { border: 1px solid @accent; }
 QPushButton:disabled { color: @soft; }
@@ -214,8 +221,7 @@ QToolButton:hover { background: @hover; }
 QToolButton:focus { border: 1px solid @accent; }
 QToolButton:checked { background: @accent_bg; color: @accent; }
 QToolButton[role="add"] { padding: 3px 8px; }
-QToolButton[role="place"] { font-size: 14px; font-weight: 600; border: none; border-bottom: 2px solid @accent;
-  border-radius: 0; padding: 0 4px; }
+QLabel[role="place"] { font-size: 14px; font-weight: 600; border-bottom: 3px solid @accent; padding: 3px 2px 0 2px; }
 QMenuBar { background: @panel; spacing: 2px; }
 QMenuBar::item { background: transparent; padding: 4px 8px; }
 QMenuBar::item:selected { background: @hover; }

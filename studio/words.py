@@ -6,6 +6,7 @@ from typing import TYPE_CHECKING, NamedTuple
 import numpy as np
 
 from engine.constants import STANDARD_GRAVITY
+from engine.findings.finding import Finding, FindingKind, Severity
 from engine.integrate.result import STATUS_SENTENCES, Regime
 from engine.model.base import Frozen
 from engine.model.elements import ElementBase, SegmentBase
@@ -39,6 +40,24 @@ KIND_WORDS = {
     "points": "Points",
     "free": "At a place of its own",
     "outlet": "At an outlet",
+}
+FINDING_WORDS = {
+    FindingKind.ESCAPE: "Leaves the run",
+    FindingKind.COMES_BACK: "Comes back",
+    FindingKind.STALL: "Stalls",
+    FindingKind.ORBIT: "Endless orbit",
+    FindingKind.JAM: "Jams",
+    FindingKind.SLIP: "Slips",
+    FindingKind.LIFT_OFF: "Lifts off",
+    FindingKind.IMPACT: "Hard impact",
+    FindingKind.OVER_SPEED: "Too fast",
+    FindingKind.THIN_MARGIN: "Thin margin",
+    FindingKind.COUNTER_GRADE: "Runs uphill",
+    FindingKind.CURVATURE_JUMP: "Curvature jumps",
+    FindingKind.JOINT: "Joint does not match",
+    FindingKind.CLASH: "Walls clash",
+    FindingKind.OUT_OF_SITE: "Outside the site",
+    FindingKind.TWO_WALLS: "Touches two walls",
 }
 ADDING = {
     "straight": "a straight piece of even grade",
@@ -78,13 +97,9 @@ def kind_words(kind: str) -> str:
     return KIND_WORDS.get(kind, kind.replace("_", " ").capitalize())
 
 
-def element_words(workspace: "Workspace", element: ElementBase) -> str:
-    """Element as shown: its name, else its kind and place in the run."""
-    if element.name:
-        return element.name
-    run = next((run for run in workspace.design.runs if element in run.elements), None)
-    number = run.elements.index(element) + 1 if run is not None else 0
-    return f"{kind_words(element.kind)} {number}" if number else kind_words(element.kind)
+def element_words(element: ElementBase) -> str:
+    """Element as shown, in the words of the findings: its name, else its id."""
+    return element.title
 
 
 def section_words(element: Frozen, units: str) -> str:
@@ -112,11 +127,25 @@ def verdict_of(workspace: "Workspace") -> Verdict:
         return Verdict("Rolling …", "none")
     worst = roll.findings[0] if roll.findings else None
     if roll.verdict != "clears":
-        reason = getattr(worst, "title", "") or STATUS_SENTENCES[roll.trajectory.status].split(";")[0].rstrip(".")
+        fails = worst is not None and worst.severity is Severity.FAILS
+        reason = finding_title(workspace, worst) if worst is not None and fails else _ending(roll)
         return Verdict(f"Fails after {roll.duration:.1f} s · {reason}", "fails")
     parts = [f"Clears in {roll.duration:.1f} s", *_least_margin(workspace, roll)]
-    thin = any(str(getattr(entry, "severity", "note")).lower().endswith(("warning", "fails", "thin")) for entry in roll.findings)
+    thin = any(entry.severity is Severity.THIN for entry in roll.findings)
     return Verdict(" · ".join(parts), "thin" if thin else "clears")
+
+
+def _ending(roll: "Roll") -> str:
+    """How the run ended, in short."""
+    return STATUS_SENTENCES[roll.trajectory.status].split(";")[0].rstrip(".")
+
+
+def finding_title(workspace: "Workspace", finding: Finding) -> str:
+    """Title of a finding: what, and where in the words of the window."""
+    element = workspace.element(finding.segment)
+    where = element_words(element) if element is not None else finding.where
+    words = FINDING_WORDS[finding.kind]
+    return f"{words}: {where}" if where else words
 
 
 def _least_margin(workspace: "Workspace", roll: "Roll") -> list[str]:
@@ -126,7 +155,7 @@ def _least_margin(workspace: "Workspace", roll: "Roll") -> list[str]:
         return []
     place = int(np.nanargmin(margin))
     element = placed_element(roll, int(roll.trajectory.element[place]))
-    where = f" at {element_words(workspace, element)}" if element is not None else ""
+    where = f" at {element_words(element)}" if element is not None else ""
     return [f"least margin {100.0 * float(margin[place]):.0f} %{where}"]
 
 

@@ -159,11 +159,8 @@ class Workspace(QObject):
     def edit(self, label: str, changed: Design, merge_key: str = "") -> None:
         """Put an edited design in place as one step that can be undone.
 
-        Parameters
-        ----------
-        label : name of the step, as the undo menu shows it
-        changed : Design made by `engine.model.edits`; the same object as before makes no step
-        merge_key : steps in a row with the same key become one (drags, spinning a number)
+        `label` is the name of the step in the undo menu; `changed` a design made by `engine.model.edits` (the same
+        object as before makes no step); steps in a row with the same `merge_key` become one (drags, stepped numbers).
         """
         if changed is not self._design:
             self.undo_stack.push(EditCommand(self.put, self._design, changed, label, merge_key))

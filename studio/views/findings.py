@@ -1,4 +1,4 @@
-"""List of what goes wrong: shape, title, sentence, cure; a click selects the element and moves the time cursor there."""
+"""List of what goes wrong: shape, title, sentence, cure; a click goes there in space and time."""
 
 from typing import NamedTuple
 
@@ -75,7 +75,7 @@ class FindingDelegate(QStyledItemDelegate):
         painter.setBrush(colour if row.shape == "triangle" else Qt.BrushStyle.NoBrush)
         painter.drawPolygon(QPolygonF(outline))
 
-    def sizeHint(self, option: QStyleOptionViewItem, index: Index) -> QSize:  # noqa: N802 (name given by Qt)
+    def sizeHint(self, option: QStyleOptionViewItem, index: Index) -> QSize:
         """Height of the texts at the width of the list."""
         view = option.widget
         width = view.viewport().width() if isinstance(view, QListView) else option.rect.width()
@@ -100,7 +100,7 @@ def lines_of(row: FindingRow, font: QFont) -> list[Line]:
 class FindingsList(QListView):
     """List whose rows are as high as their text at the present width."""
 
-    def resizeEvent(self, event: object) -> None:  # noqa: N802 (name given by Qt)
+    def resizeEvent(self, event: object) -> None:
         """Lay the rows out anew."""
         super().resizeEvent(event)
         self.scheduleDelayedItemsLayout()
@@ -173,3 +173,12 @@ class FindingsPanel(QFrame):
             self.chosen.emit(row.element)
         if row.time is not None:
             self._workspace.set_time(row.time)
+
+    @Slot()
+    def go_next(self) -> None:
+        """Go to the next finding; after the last one to the first."""
+        count = len(self.model.rows)
+        if count:
+            index = self.model.index((self.list.currentIndex().row() + 1) % count, 0)
+            self.list.setCurrentIndex(index)
+            self._go(index)

@@ -3,7 +3,7 @@
 from typing import Any, get_args
 
 from PySide6.QtCore import QSignalBlocker, Qt, Slot
-from PySide6.QtWidgets import QComboBox, QGridLayout, QHBoxLayout, QLabel, QSizePolicy, QToolButton, QWidget
+from PySide6.QtWidgets import QComboBox, QGridLayout, QHBoxLayout, QLabel, QSizePolicy, QWidget
 
 from engine.model.design import LengthUnit
 from engine.model.edits import set_field
@@ -46,10 +46,9 @@ class Header(QWidget):
         self.setAttribute(Qt.WidgetAttribute.WA_StyledBackground)
         self.setFixedHeight(HEIGHT)
         self._workspace = workspace
-        self.place = QToolButton()
-        self.place.setText("Layout")
+        self.place = QLabel("Layout")
         self.place.setProperty("role", "place")
-        self.place.setFocusPolicy(Qt.FocusPolicy.NoFocus)
+        self.place.setFixedHeight(HEIGHT - 1)
         self.name, self.edited = QLabel(), QLabel()
         self.name.setProperty("role", "design")
         self.edited.setProperty("role", "soft")
@@ -91,7 +90,7 @@ class Header(QWidget):
         row.setColumnStretch(0, 1)
         row.setColumnStretch(2, 1)
 
-    def resizeEvent(self, event: Any) -> None:  # noqa: N802 (name given by Qt)
+    def resizeEvent(self, event: Any) -> None:
         """Fit the texts anew."""
         super().resizeEvent(event)
         self.refresh()

@@ -6,20 +6,25 @@ from typing import Any
 from PySide6.QtCore import Qt, Slot
 from PySide6.QtWidgets import QFrame, QGridLayout, QHBoxLayout, QLabel, QPushButton, QScrollArea, QVBoxLayout, QWidget
 
-from engine.errors import EditError
+from engine.errors import EditError, UnknownNameError
 from engine.model.base import FieldSpec, Frozen, fields_of
 from engine.model.catalogue import ball_table, pair_table
 from engine.model.edits import Path, get_field, path_text, path_to_element, set_field
 from engine.model.elements import ElementBase
 from studio.steps import bank_for_speed, part_of_kind
 from studio.theme import Theme
-from studio.widgets.forms import FieldForm
+from studio.widgets.fields import FieldEditor
+from studio.widgets.forms import FieldForm, Row
 from studio.words import element_words, figures_of, section_words
 from studio.workspace import Workspace
 
-LAST_FIELDS = ("bank_start", "bank_end", "section", "pair", "name", "note")
+LAST_FIELDS = ("bank_start", "bank_end", "section")
 """Fields every segment has come after the numbers of its kind."""
+PLAIN_FIELDS = ("pair", "name", "note")
+"""Fields that come last, below what the ball does."""
 MARGIN = 12
+Piece = tuple[Frozen, Path, list[str]]
+"""Piece of the document to edit: model, path, names of its fields."""
 
 
 class Inspector(QFrame):
@@ -31,7 +36,7 @@ class Inspector(QFrame):
         self.setAccessibleName("Inspector")
         self._workspace = workspace
         self._signature: tuple[Any, ...] = ()
-        self.form: FieldForm | None = None
+        self.forms: list[FieldForm] = []
         self._title, self._aside = QLabel(), QLabel()
         self._title.setProperty("role", "title")
         self._aside.setProperty("role", "soft")
@@ -79,52 +84,73 @@ class Inspector(QFrame):
         if signature != self._signature:
             self._signature = signature
             self._rebuild(pieces)
-        elif self.form is not None:
-            for row in self.form.rows:
+        else:
+            for row in self.rows:
                 value = get_field(self._workspace.design, row.path)
                 row.editor.show_value(getattr(value, "kind", value) if isinstance(value, Frozen) else value)
         self._show_title()
         self._refresh_facts()
 
-    def _pieces(self) -> list[tuple[Frozen, Path, list[str] | None]]:
+    def _pieces(self) -> list[Piece]:
         """Pieces of the document to edit: model, path, names of fields."""
         design = self._workspace.design
         element = self._workspace.selected_element
         if element is not None:
-            return [(element, path_to_element(design, element.id), element_fields(element))]
+            path = path_to_element(design, element.id)
+            return [(element, path, element_fields(element)), (element, path, list(PLAIN_FIELDS))]
         if self._workspace.selection:
             return []
-        pieces: list[tuple[Frozen, Path, list[str] | None]] = []
+        pieces: list[Piece] = []
         run = self._workspace.run
         if run is not None:
-            path: Path = ("runs", design.runs.index(run))
-            pieces.append((run, path, ["ball", "pair", "name", "start", "release"]))
+            pieces.append((run, ("runs", design.runs.index(run)), ["ball", "pair", "name", "start", "release"]))
         pieces.append((design, (), ["name", "units", "note"]))
         if design.site is not None:
             pieces.append((design.site, ("site",), ["height", "floor", "reach", "outline"]))
         return pieces
 
-    def _rebuild(self, pieces: list[tuple[Frozen, Path, list[str] | None]]) -> None:
-        """Make the rows anew."""
-        if self.form is not None:
-            self._column.removeWidget(self.form)
-            self.form.hide()
-            self.form.deleteLater()
-        self.form = FieldForm(self._workspace.design.units, self._entries)
+    def _rebuild(self, pieces: list[Piece]) -> None:
+        """Make the rows anew: those of an element's last fields below what the ball does."""
+        for form in self.forms:
+            self._column.removeWidget(form)
+            form.hide()
+            form.deleteLater()
+        upper, lower = self._new_form(), self._new_form()
         headings = {(): "Design", ("site",): "Site"}
         for model, path, names in pieces:
+            form = lower if names == list(PLAIN_FIELDS) else upper
             if path in headings:
-                self.form.heading(headings[path])
-            self.form.add(model, path, names)
-        self.form.edited.connect(self._commit)
-        self._column.insertWidget(0, self.form)
+                form.heading(headings[path])
+            form.add(model, path, names)
+        self._column.insertWidget(0, upper)
+        self._column.insertWidget(self._column.count() - 1, lower)
+        lower.setVisible(bool(lower.rows))
+        self.forms = [upper, lower]
+
+    def _new_form(self) -> FieldForm:
+        """Empty form whose edits become steps."""
+        form = FieldForm(self._workspace.design.units, self._entries)
+        form.edited.connect(self._commit)
+        return form
+
+    @property
+    def rows(self) -> list[Row]:
+        """All rows on screen."""
+        return [row for form in self.forms for row in form.rows]
+
+    def editor(self, *path: str | int) -> FieldEditor:
+        """Editor whose path ends with these steps."""
+        found = next((row.editor for row in self.rows if row.path[-len(path) :] == path), None)
+        if found is None:
+            raise UnknownNameError("field", path_text(path), [str(row.path[-1]) for row in self.rows])
+        return found
 
     def _show_title(self) -> None:
         """Name of what is selected, and its cross section beside it."""
         element, count = self._workspace.selected_element, len(self._workspace.selection)
         aside = ""
         if element is not None:
-            title = element_words(self._workspace, element)
+            title = element_words(element)
             aside = section_words(element, self._workspace.design.units)
         elif count:
             title = f"{count} selected"
@@ -160,7 +186,7 @@ class Inspector(QFrame):
         if what == "element":
             run_id = self._workspace.run_id
             others = [element for run in design.runs if run.id != run_id for element in run.elements]
-            return {element.id: element_words(self._workspace, element) for element in others}
+            return {element.id: element_words(element) for element in others}
         if what == "start" and len(design.runs) < 2:
             return {"free": "At a place of its own"}
         return None
@@ -174,12 +200,12 @@ class Inspector(QFrame):
             present = get_field(design, path)
             changed = set_field(design, path, part_of_kind(self._workspace, present, value))
         except EditError as error:
-            if self.form is not None:
-                self.form.refuse(path, plain_sentence(str(error), path))
+            for form in self.forms:
+                form.refuse(path, plain_sentence(str(error), path))
             return
         name = str(path[-1]).replace("_", " ")
         element = self._workspace.selected_element
-        owner = f" of {element_words(self._workspace, element)}" if element is not None else ""
+        owner = f" of {element_words(element)}" if element is not None else ""
         self._workspace.edit(f"{name}{owner}", changed, path_text(path) if merge else "")
 
     @Slot()
@@ -188,12 +214,12 @@ class Inspector(QFrame):
         element = self._workspace.selected_element
         changed = bank_for_speed(self._workspace, element) if element is not None else None
         if element is not None and changed is not None:
-            self._workspace.edit(f"bank of {element_words(self._workspace, element)}", changed)
+            self._workspace.edit(f"bank of {element_words(element)}", changed)
 
     def focus_first(self) -> None:
         """Put the keyboard into the first row."""
-        if self.form is not None and self.form.rows:
-            self.form.rows[0].editor.setFocus(Qt.FocusReason.ShortcutFocusReason)
+        if self.rows:
+            self.rows[0].editor.setFocus(Qt.FocusReason.ShortcutFocusReason)
 
 
 class Facts(QWidget):
@@ -236,7 +262,7 @@ class Facts(QWidget):
 
 def element_fields(element: ElementBase) -> list[str]:
     """Fields of an element in the order of the panel: numbers of its kind first."""
-    names = [spec.name for spec in fields_of(element) if spec.name != "id"]
+    names = [spec.name for spec in fields_of(element) if spec.name not in ("id", *PLAIN_FIELDS)]
     own = [name for name in names if name not in LAST_FIELDS]
     return own + [name for name in LAST_FIELDS if name in names]
 

@@ -53,7 +53,7 @@ class TimeLine(QWidget):
         workspace.rolled.connect(lambda _roll: self.update())
         theme.changed.connect(self.update)
 
-    def sizeHint(self) -> QSize:  # noqa: N802 (name given by Qt)
+    def sizeHint(self) -> QSize:
         """Preferred size."""
         return QSize(600, 52)
 
@@ -78,7 +78,7 @@ class TimeLine(QWidget):
         self.setAccessibleDescription(f"{t:.2f} s")
         self.update()
 
-    def paintEvent(self, event: QPaintEvent) -> None:  # noqa: N802 (name given by Qt)
+    def paintEvent(self, event: QPaintEvent) -> None:
         """Draw line, figures, ticks of events and the cursor."""
         painter = QPainter(self)
         painter.setRenderHint(QPainter.RenderHint.Antialiasing)
@@ -127,12 +127,12 @@ class TimeLine(QWidget):
                 painter.drawLine(QPointF(x, y - 8), QPointF(x, y + 8))
                 last = x
 
-    def mousePressEvent(self, event: QMouseEvent) -> None:  # noqa: N802 (name given by Qt)
+    def mousePressEvent(self, event: QMouseEvent) -> None:
         """Move the time cursor here."""
         if event.button() == Qt.MouseButton.LeftButton:
             self._workspace.set_time(self.t_of(event.position().x()))
 
-    def mouseMoveEvent(self, event: QMouseEvent) -> None:  # noqa: N802 (name given by Qt)
+    def mouseMoveEvent(self, event: QMouseEvent) -> None:
         """Scrub while the button is down; else say what event is near."""
         if event.buttons() & Qt.MouseButton.LeftButton:
             self._workspace.set_time(self.t_of(event.position().x()))
@@ -144,7 +144,7 @@ class TimeLine(QWidget):
                 near = f"{entry.t:.2f} s: {EVENT_WORDS[entry.kind]}"
         self.setToolTip(near)
 
-    def keyPressEvent(self, event: QKeyEvent) -> None:  # noqa: N802 (name given by Qt)
+    def keyPressEvent(self, event: QKeyEvent) -> None:
         """Step with arrow keys, Home and End."""
         big = 10.0 if event.modifiers() & Qt.KeyboardModifier.ShiftModifier else 1.0
         now = self._workspace.time
@@ -214,7 +214,7 @@ class Playback(QFrame):
         self.play_button.setIcon(icon("pause" if self.playing else "play", self._theme.colour("ink")))
         self.start_button.setIcon(icon("start", self._theme.colour("ink")))
         self.play_button.setAccessibleName("Pause" if self.playing else "Play")
-        self.play_button.setToolTip("Pause (Space)" if self.playing else "Play (Space)")
+        self.play_button.setToolTip("Pause (P)" if self.playing else "Play (P)")
 
     @property
     def playing(self) -> bool:

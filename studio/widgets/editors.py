@@ -58,9 +58,7 @@ class FlagEditor(FieldEditor):
 class ChoiceEditor(FieldEditor):
     """One of several entries: words of a choice, kinds of a part, or ids with their names."""
 
-    def __init__(
-        self, spec: FieldSpec, units: str, entries: Mapping[Any, str], parent: QWidget | None = None
-    ) -> None:
+    def __init__(self, spec: FieldSpec, units: str, entries: Mapping[Any, str], parent: QWidget | None = None) -> None:
         super().__init__(spec, units, parent)
         self.box = QComboBox()
         self.box.setSizeAdjustPolicy(QComboBox.SizeAdjustPolicy.AdjustToMinimumContentsLengthWithIcon)
@@ -72,7 +70,7 @@ class ChoiceEditor(FieldEditor):
         self.box.installEventFilter(self)
         self.box.activated.connect(lambda place: self.committed.emit(self.box.itemData(place), False))
 
-    def eventFilter(self, watched: object, event: QEvent) -> bool:  # noqa: N802 (name given by Qt)
+    def eventFilter(self, watched: object, event: QEvent) -> bool:
         """Leave the wheel to the panel: a choice must not change while scrolling past."""
         if event.type() == QEvent.Type.Wheel and watched is self.box:
             event.ignore()
@@ -148,7 +146,7 @@ class PointsEditor(FieldEditor):
         self.text.installEventFilter(self)
         self.text.setToolTip(f"{spec.label}, one point a line, in {units}")
 
-    def eventFilter(self, watched: object, event: QEvent) -> bool:  # noqa: N802 (name given by Qt)
+    def eventFilter(self, watched: object, event: QEvent) -> bool:
         """Read the points when the editor is left."""
         if watched is self.text and event.type() == QEvent.Type.FocusOut:
             self.finish()

@@ -78,8 +78,17 @@ class NumberLine(QLineEdit):
     """Line of text that holds a number; arrow keys step it."""
 
     stepped = Signal(float)
+    abandoned = Signal()
 
-    def keyPressEvent(self, event: QKeyEvent) -> None:  # noqa: N802 (name given by Qt)
+    def event(self, event: QEvent) -> bool:
+        """Keep Escape for the line while something is typed: it would clear the selection otherwise."""
+        if event.type() == QEvent.Type.ShortcutOverride and isinstance(event, QKeyEvent):
+            if event.key() == Qt.Key.Key_Escape and self.isModified():
+                event.accept()
+                return True
+        return super().event(event)
+
+    def keyPressEvent(self, event: QKeyEvent) -> None:
         """Step by arrow and page keys; Escape gives the value back."""
         steps = {
             Qt.Key.Key_Up: 1.0,
@@ -91,13 +100,12 @@ class NumberLine(QLineEdit):
             shift = event.modifiers() & Qt.KeyboardModifier.ShiftModifier
             self.stepped.emit(steps * (PAGE if shift and abs(steps) == 1.0 else 1.0))
             return
-        if event.key() == Qt.Key.Key_Escape and self.isUndoAvailable():
-            self.undo()
-            self.editingFinished.emit()
+        if event.key() == Qt.Key.Key_Escape and self.isModified():
+            self.abandoned.emit()
             return
         super().keyPressEvent(event)
 
-    def wheelEvent(self, event: QWheelEvent) -> None:  # noqa: N802 (name given by Qt)
+    def wheelEvent(self, event: QWheelEvent) -> None:
         """Step by the wheel, only while the line has the keyboard."""
         if self.hasFocus() and event.angleDelta().y():
             self.stepped.emit(1.0 if event.angleDelta().y() > 0 else -1.0)
@@ -122,11 +130,12 @@ class QuantityEditor(FieldEditor):
         self.line.setToolTip(f"{spec.label}: {allowed_words(spec.low, spec.high, spec.unit, units)}")
         self.line.editingFinished.connect(self._finish)
         self.line.stepped.connect(self._step)
+        self.line.abandoned.connect(lambda: self.show_value(self._value))
         self.line.installEventFilter(self)
         if spec.optional:
             self.line.setPlaceholderText("not given")
 
-    def eventFilter(self, watched: object, event: QEvent) -> bool:  # noqa: N802 (name given by Qt)
+    def eventFilter(self, watched: object, event: QEvent) -> bool:
         """Keep the unit at the right end of the line."""
         if event.type() in (QEvent.Type.Resize, QEvent.Type.Show):
             width = self.unit_label.sizeHint().width()
@@ -143,6 +152,7 @@ class QuantityEditor(FieldEditor):
             if self.line.text() != number:
                 self.line.setText(number)
                 self.line.setCursorPosition(0)
+            self.line.setModified(False)
         self.accept()
 
     def _finish(self) -> None:

@@ -1,4 +1,4 @@
-"""Rows of field editors for a piece of the document, parts of it indented below; refused edits are answered in the row."""
+"""Rows of field editors for a piece of the document and its parts; a refused edit is answered in its row."""
 
 from collections.abc import Callable, Mapping
 from typing import Any, NamedTuple
@@ -40,7 +40,7 @@ class FieldForm(QWidget):
         self._grid = QGridLayout(self)
         self._grid.setContentsMargins(0, 0, 0, 0)
         self._grid.setHorizontalSpacing(8)
-        self._grid.setVerticalSpacing(6)
+        self._grid.setVerticalSpacing(5)
         self._grid.setColumnMinimumWidth(0, LABEL_WIDTH)
         self._grid.setColumnStretch(1, 1)
         self.rows: list[Row] = []
@@ -85,10 +85,6 @@ class FieldForm(QWidget):
         editor.show_value(value)
         editor.committed.connect(lambda changed, merge, path=path: self.edited.emit(path, changed, merge))
         self.rows.append(Row(path, editor))
-
-    def editor(self, *path: str | int) -> FieldEditor | None:
-        """Editor whose path ends with these steps."""
-        return next((row.editor for row in self.rows if row.path[-len(path) :] == path), None)
 
     def refuse(self, path: Path, sentence: str) -> None:
         """Answer in the row of a path."""
