@@ -1,0 +1,1 @@
+"""Reference cases: independent solutions that the engine is held against."""
