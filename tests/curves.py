@@ -56,3 +56,12 @@ def s_curve(radius: float, turn: float) -> Array:
     second[:, 1:4] += first[-1, 1:4]
     second[:, 0] += first[-1, 0]
     return np.concatenate([first, second])
+
+
+def twisted_line(length: float, twist: float, pieces: int = 200) -> Array:
+    """Level straight along +x whose `down` turns evenly toward side through `twist` (rad)."""
+    table = line(length, pieces=pieces)
+    angle, rate = twist * table[:, 0] / length, twist / length
+    table[:, 11], table[:, 12] = np.sin(angle), -np.cos(angle)
+    table[:, 14], table[:, 15] = rate * np.cos(angle), rate * np.sin(angle)
+    return table

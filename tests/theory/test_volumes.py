@@ -53,7 +53,7 @@ def test_error_falls_in_proportion_to_the_tolerance(table, smooth):
 def test_banked_trough_takes_its_centroid_round_the_bend():
     """Half pipe with sharp lips lying on its side, mouth toward the centre of the bend: V = (R + y_c) turn A.
 
-    Centroid of a half ring: y_c = 4/(3 pi) (b^3 - a^3)/(b^2 - a^2) from the centre, here away from the centre of the bend.
+    Centroid of a half ring: y_c = 4/(3 pi) (b^3 - a^3)/(b^2 - a^2) from its centre, here outward.
     """
     radius, turn, tolerance = 0.08, 3.0, 1e-6
     table = curves.arc(radius, turn)
@@ -81,7 +81,7 @@ def test_cone_shell(tolerance):
 @pytest.mark.parametrize("tolerance", TOLERANCES)
 @pytest.mark.parametrize("side", [-1, 1], ids=["ball inside", "ball outside"])
 def test_sphere_shell(side, tolerance):
-    """Zone of a sphere from latitude -60 to -20 degrees, run downward; the ball inside is on the right of the meridian."""
+    """Zone of a sphere from latitude -20 to -60 degrees; a ball inside is on the right of the meridian."""
     size, wall, low, high = 0.25, 0.003, math.radians(-60.0), math.radians(-20.0)
     mesh = wall_of_revolution(profiles.arc((0.0, 0.0), size, (high, low)), STAND, side, wall, tolerance)
     other = size - side * wall

@@ -162,6 +162,15 @@ def test_free_jump_has_no_solid():
         build_solid(small().placed[1], COARSE)
 
 
+@pytest.mark.parametrize("coarse", [False, True])
+def test_narrow_mouth_that_winds_round_stays_open(coarse):
+    """The mouth is 0.37 mm wide: chords of a tolerance of 1 mm lead one lip through the other."""
+    section = Trough(bore=0.012, wall=0.0055, opening=0.0612, lip_radius=0.0)
+    size = {"radius": 0.0418, "turn": 0.599, "grade": 0.679}
+    (entry,) = laid(Bend(id="b", section=section, bank_start=1.263, bank_end=-2.967, **size)).placed
+    assert refusals(entry, build_solid(entry, COARSE, coarse=coarse), COARSE) == []
+
+
 def test_coarse_solid_is_closed_and_has_fewer_triangles():
     for entry in everything().placed:
         if entry.element.id == "g":

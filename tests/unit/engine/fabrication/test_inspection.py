@@ -4,7 +4,6 @@ import math
 from fractions import Fraction
 
 import numpy as np
-import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
@@ -175,7 +174,7 @@ CORNER = st.tuples(*[st.integers(-6, 6)] * 3)
 
 
 def exactly_crosses(p, q, a, b, c) -> bool | None:
-    """Whether the segment pq passes through the inside of abc, in exact arithmetic; None when it only touches or lies in the plane."""
+    """Whether the segment pq passes through the inside of abc, in exact arithmetic; None when it only touches."""
     p, q, a, b, c = ([Fraction(x) for x in point] for point in (p, q, a, b, c))
 
     def minus(u, v):

@@ -9,8 +9,8 @@ from engine.errors import PartRefusedError
 from engine.fabrication.inspection import inspect
 from engine.fabrication.revolve import Face, Stand, plate, revolve, tray, wall_of_revolution, wall_outline
 from engine.geometry import profiles
-from engine.shapes import meridian, side_of_wall
 from engine.model.elements import Bowl, Dome, Funnel, Hyperbolic, Parabolic, Points, Well
+from engine.shapes import meridian, side_of_wall
 
 ROUNDING = 1e-12
 """Relative: the volume of a polyhedron, summed in double precision."""

@@ -102,7 +102,7 @@ def test_ring_count_by_hand():
 
 
 def deviation_from_helix(mesh, radius: float, climb: float, ring: float) -> float:
-    """Largest distance between the middles of triangles' sides on one skin and a tube of radius `ring` about a helix, m."""
+    """Largest distance of the middles of triangles' sides from a tube of radius `ring` about a helix, m."""
     pairs = np.concatenate([mesh.faces[:, [0, 1]], mesh.faces[:, [1, 2]], mesh.faces[:, [2, 0]]])
     point = 0.5 * (mesh.vertices[pairs[:, 0]] + mesh.vertices[pairs[:, 1]])
     angle = np.arctan2(point[:, 0], radius - point[:, 1])
@@ -131,6 +131,19 @@ def test_both_skins_lie_within_the_tolerance(climb, tolerance):
         assert 0.2 * tolerance < missed <= tolerance
 
 
+def test_skins_of_a_twisted_tube_lie_within_the_tolerance():
+    """Twist slants the sides of the triangles: a slanted side spans more of the ring than a side of the profile."""
+    profile = tube_profile(BORE, WALL, TOLERANCE)
+    mesh = sweep(curves.twisted_line(0.05, 6.0), profile, TOLERANCE)
+    m = profile.loops[0]
+    for number, ring in ((0, BORE + WALL), (1, BORE)):
+        faces = mesh.faces[((mesh.faces % (2 * m)) // m == number).all(axis=1)]
+        pairs = np.concatenate([faces[:, [0, 1]], faces[:, [1, 2]], faces[:, [2, 0]]])
+        middle = mesh.vertices[pairs].mean(axis=1)
+        missed = np.abs(np.hypot(middle[:, 1], middle[:, 2]) - ring)
+        assert 0.2 * TOLERANCE < missed.max() <= TOLERANCE
+
+
 def test_half_the_tolerance_takes_about_twice_the_triangles():
     counts = [sweep(curves.arc(0.08, 2.0), tube_profile(BORE, WALL, t), t).triangles for t in (2e-5, 1e-5)]
     assert 1.8 < counts[1] / counts[0] < 2.2
@@ -144,7 +157,7 @@ def test_break_points_are_stations():
 
 
 def test_s_curve_does_not_turn_its_section_over():
-    """A frame by the centre of curvature would jump by half a turn at the inflection: neighbouring rings would cross."""
+    """A frame by the centre of curvature would jump by half a turn at the inflection: rings would cross."""
     profile = trough_profile(BORE, WALL, LIP, TOLERANCE)
     mesh = sweep(curves.s_curve(0.08, 1.0), profile, TOLERANCE)
     assert inspect(mesh).good
