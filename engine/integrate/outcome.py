@@ -106,7 +106,8 @@ def after_boundary(walls, ball, mode, y, side, out):
     y[1] -= foot.gap * foot.ny
     y[2] -= foot.gap * foot.nz
     new = land(walls, ball, target, y, normal, out)
-    return Outcome(new[0], CROSSING, GOES_ON, target, max(0.0, -vn), normal, lost + new[1])
+    kind = LIFT_OFF if new[0].regime == FLIGHT and lost == 0.0 else CROSSING
+    return Outcome(new[0], kind, GOES_ON, target, max(0.0, -vn), normal, lost + new[1])
 
 
 @kernel

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from engine.integrate import log as columns
 from engine.reference.events import family, happened
-from engine.reference.numbers import NUMBERS
+from engine.reference.numbers import EXTREMES, NUMBERS, extreme_off
 from engine.reference.run import MODES, CaseRun, ended_at_rest, run_case, run_row, state_of
 
 Array = NDArray[np.float64]
@@ -107,18 +107,25 @@ def compare_numbers(result: CaseResult, case: dict[str, Any], run: CaseRun) -> N
     """Compare every number that is a result of the run; name the others as not run."""
     left = []
     for name, given in (case.get("numbers") or {}).items():
-        if name not in NUMBERS or not isinstance(given, int | float) or isinstance(given, bool):
+        if name not in {**NUMBERS, **EXTREMES} or not isinstance(given, int | float) or isinstance(given, bool):
             left.append(name)
             continue
         try:
-            own = NUMBERS[name](run, case)
+            off = number_off(run, case, name, float(given))
         except (IndexError, ValueError, ZeroDivisionError):
             result.fail(f"number {name} cannot be read from the run")
             continue
         floor = NUMBER * abs(float(given)) if given else POSITION
-        result.add("numbers", abs(own - float(given)) / max(floor, 1e-12), f"number {name}")
+        result.add("numbers", off / max(floor, 1e-12), f"number {name}")
     if left:
         result.notes.append("not run: " + ", ".join(left))
+
+
+def number_off(run: CaseRun, case: dict[str, Any], name: str, given: float) -> float:
+    """Return how far a given number is from the run's own."""
+    if name in EXTREMES:
+        return extreme_off(run, case, name, given)
+    return abs(NUMBERS[name](run, case) - given)
 
 
 def compare_map(result: CaseResult, case: dict[str, Any]) -> None:

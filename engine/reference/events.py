@@ -22,6 +22,8 @@ class Happened(NamedTuple):
     w: Array
 
 
+STILL = 1e-9
+"""Share of the largest vertical speed below which the ball counts as not moving up or down: rounding has a sign too."""
 BEFORE = ("landing", "strikes", "first contact")
 """Touch-downs of which the case gives the state before the impact."""
 TOUCH = ("after the impact", "after that impact", "impact ")
@@ -42,9 +44,10 @@ def turning_times(run: CaseRun, upward: bool) -> list[float]:
     samples = run.rows.samples
     t, vz = samples[:, columns.T], samples[:, columns.Y + 5]
     sign = 1.0 if upward else -1.0
-    places = np.flatnonzero((sign * vz[:-1] < 0.0) & (sign * vz[1:] >= 0.0))
     slope = _slopes(t, vz)
-    return [crossing(t, vz, slope, int(i), 0.0) for i in places]
+    moving = np.flatnonzero(np.abs(vz) > STILL * np.abs(vz).max())
+    turns = np.flatnonzero((sign * vz[moving[:-1]] < 0.0) & (sign * vz[moving[1:]] > 0.0))
+    return [crossing(t, vz, slope, (int(moving[i]), int(moving[i + 1])), 0.0) for i in turns]
 
 
 def _slopes(t: Array, value: Array) -> Array:

@@ -91,11 +91,21 @@ def asked_times(case: dict[str, Any]) -> Array:
     return np.unique(np.array(wanted, dtype=np.float64))
 
 
+def last_time(case: dict[str, Any], asked: Array) -> float:
+    """Return the last time that a case speaks of, s: a sample, an event, or a number that is a time of its run."""
+    times = [
+        float(value)
+        for name, value in (case.get("numbers") or {}).items()
+        if isinstance(value, int | float) and name.endswith(("_time", "_at"))
+    ]
+    return max([0.0, *asked.tolist(), *times])
+
+
 def run_case(case: dict[str, Any]) -> CaseRun:
     """Roll a case from its start to a little past its last sample or event."""
     scene, ball = scene_of(case), ball_of(case)
     asked = asked_times(case)
-    end = (float(asked[-1]) if len(asked) else 0.0) + AFTER
+    end = last_time(case, asked) + AFTER
     start = start_of(case, scene, ball)
     rows = roll_rows(prepare(scene), ball, start_row(start), Asked(end, VERIFY_TOLERANCE, FINE, asked))
     return CaseRun(ball, scene, rows, asked)
@@ -123,19 +133,20 @@ def first_way_out(samples: Array, depth: float) -> tuple[str, float]:
     t, z, vz = samples[:, columns.T], samples[:, columns.Y + 2], samples[:, columns.Y + 5]
     out = np.flatnonzero((z[:-1] < 0.0) & (z[1:] >= 0.0))
     down = np.flatnonzero((z[:-1] > -depth) & (z[1:] <= -depth))
-    first_out = crossing(t, z, vz, out[0], 0.0) if len(out) else math.inf
-    first_down = crossing(t, z, vz, down[0], -depth) if len(down) else math.inf
+    first_out = crossing(t, z, vz, (int(out[0]), int(out[0]) + 1), 0.0) if len(out) else math.inf
+    first_down = crossing(t, z, vz, (int(down[0]), int(down[0]) + 1), -depth) if len(down) else math.inf
     if math.isinf(first_out) and math.isinf(first_down):
         return "stays", math.nan
     return ("exit", first_out) if first_out < first_down else ("drop", first_down)
 
 
-def crossing(t: Array, value: Array, rate: Array, i: int, level: float) -> float:
-    """Return when a quantity passes `level` between samples i and i+1, by a cubic through values and rates."""
-    h = t[i + 1] - t[i]
+def crossing(t: Array, value: Array, rate: Array, pair: tuple[int, int], level: float) -> float:
+    """Return when a quantity passes `level` between two samples, by a cubic through values and rates."""
+    i, j = pair
+    h = t[j] - t[i]
     if h <= 0.0:
         return float(t[i])
-    a, b, c, d = value[i] - level, h * rate[i], value[i + 1] - level, h * rate[i + 1]
+    a, b, c, d = value[i] - level, h * rate[i], value[j] - level, h * rate[j]
     roots = np.roots([2 * a + b - 2 * c + d, -3 * a - 2 * b + 3 * c - d, b, a])
     real = roots[np.abs(roots.imag) < 1e-9].real
     inside = real[(real > -1e-9) & (real < 1 + 1e-9)]
