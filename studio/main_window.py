@@ -7,7 +7,7 @@ from typing import Any, NamedTuple
 
 from PySide6.QtCore import Qt, QTimer, Slot
 from PySide6.QtGui import QAction, QCloseEvent, QDragEnterEvent, QDropEvent, QGuiApplication, QKeyEvent, QResizeEvent
-from PySide6.QtWidgets import QApplication, QMainWindow, QSplitter, QVBoxLayout, QWidget
+from PySide6.QtWidgets import QApplication, QHBoxLayout, QMainWindow, QSplitter, QVBoxLayout, QWidget
 
 from engine.errors import TrundleError
 from engine.model.design import Site
@@ -98,17 +98,16 @@ class MainWindow(QMainWindow):
         inner = QVBoxLayout(body)
         inner.setContentsMargins(8, 8, 8, 8)
         inner.addWidget(self.board)
-        row = QSplitter(Qt.Orientation.Horizontal)
-        row.setHandleWidth(0)
+        row = QHBoxLayout()
+        row.setSpacing(0)
         row.addWidget(self.strip)
-        row.addWidget(body)
-        row.setStretchFactor(1, 1)
+        row.addWidget(body, 1)
         whole = QWidget()
         column = QVBoxLayout(whole)
         column.setContentsMargins(0, 0, 0, 0)
         column.setSpacing(0)
         column.addWidget(self.header)
-        column.addWidget(row, 1)
+        column.addLayout(row, 1)
         self.setCentralWidget(whole)
 
     @staticmethod

@@ -112,6 +112,9 @@ class WorkingCopy(QObject):
     def remove(self) -> None:
         """Remove the copy: nothing would be lost."""
         self._timer.stop()
-        self._copy.unlink(missing_ok=True)
-        self._note.unlink(missing_ok=True)
+        for path in (self._copy, self._note):
+            try:
+                path.unlink(missing_ok=True)
+            except OSError as error:
+                self.failure = f"The working copy cannot be removed: {error.strerror or error}."
         self._lock.unlock()

@@ -8,7 +8,7 @@ from collections.abc import Iterable
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from PySide6.QtCore import QObject, Signal
+from PySide6.QtCore import QObject, Signal, Slot
 from PySide6.QtGui import QUndoStack
 
 from engine.errors import DesignError, UnknownNameError
@@ -52,7 +52,12 @@ class Workspace(QObject):
         self._time = 0.0
         self._run_id: str | None = None
         self._recovered = False
-        self.undo_stack.cleanChanged.connect(lambda _clean: self.fileChanged.emit())
+        self.undo_stack.cleanChanged.connect(self._tell_file)
+
+    @Slot(bool)
+    def _tell_file(self, _clean: bool) -> None:
+        """Pass on that the edited mark changed. A slot, not a lambda: the stack tells once more while it is deleted."""
+        self.fileChanged.emit()
 
     # -- reading ----------------------------------------------------------------------------------
     @property

@@ -22,7 +22,7 @@ class Happened(NamedTuple):
     w: Array
 
 
-STILL = 1e-9
+STILL = 1e-6
 """Share of the largest vertical speed below which the ball counts as not moving up or down: rounding has a sign too."""
 BEFORE = ("landing", "strikes", "first contact")
 """Touch-downs of which the case gives the state before the impact."""
