@@ -138,7 +138,7 @@ class MainWindow(QMainWindow):
 
     def usual_panes(self) -> None:
         """Show all panes at their usual sizes."""
-        for pane in self.panes.values():
+        for pane in (*self.panes.values(), self.upper, self.side):
             pane.show()
         width, height = max(self.width() - 140, 700), max(self.height() - 80, 480)
         self.board.setSizes([width - SIDE_WIDTH, SIDE_WIDTH])

@@ -124,6 +124,7 @@ class Inspector(QFrame):
             form.add(model, path, names)
         self._column.insertWidget(0, upper)
         self._column.insertWidget(self._column.count() - 1, lower)
+        upper.show()
         lower.setVisible(bool(lower.rows))
         self.forms = [upper, lower]
 
