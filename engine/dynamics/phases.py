@@ -3,7 +3,7 @@
 import math
 
 from engine.constants import STOPPED_SPIN
-from engine.contact.query import foot_on
+from engine.contact.query import ANYWHERE, foot_on
 from engine.contact.surface import MU_STATIC
 from engine.dynamics.rates import contact_rates
 from engine.dynamics.state import FLIGHT, REST, ROLLING, SLIPPING, Mode
@@ -58,7 +58,7 @@ def mode_on(walls, ball, patch, y, out):
     no slip at all.
     """
     trial = Mode(patch, ROLLING, 0, 1)
-    contact = contact_rates(walls, ball, trial, y, (-1, 0.0), out)
+    contact = contact_rates(walls, ball, trial, y, ANYWHERE, out)
     if not contact.force > 0.0:
         return Mode(-1, FLIGHT, 0, 0)
     if contact.slip > STUCK_SLIP:
@@ -83,7 +83,7 @@ def holds_still(walls, ball, mode, y, out):
     """
     stop(y)
     frictionless = Mode(mode.patch, SLIPPING, 0, 1)
-    contact = contact_rates(walls, ball, frictionless, y, (-1, 0.0), out)
+    contact = contact_rates(walls, ball, frictionless, y, ANYWHERE, out)
     # without slip velocity the slipping force is zero, so the acceleration is the pull along the wall
     pull = math.sqrt(out[3] * out[3] + out[4] * out[4] + out[5] * out[5])
     return pull <= contact.loss / ball.radius * contact.force

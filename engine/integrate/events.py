@@ -9,7 +9,7 @@ from typing import NamedTuple
 import numpy as np
 
 from engine.constants import NOISE_SHARE, ROOT_SETTLED, ROOT_TURNS, STOPPED_SLIP, YOUNG_SLIP
-from engine.contact.query import FAR, boundary, foot_on
+from engine.contact.query import ANYWHERE, FAR, boundary, foot_on
 from engine.contact.surface import MU_KINETIC, MU_STATIC
 from engine.dynamics.rates import rates
 from engine.dynamics.state import FLIGHT, ROLLING, SLIPPING
@@ -141,7 +141,7 @@ def gap_at(walls, ball, patch, work, theta):
     """Return the gap to a wall at the share theta of the step, m."""
     dense_at(work.dense, theta, work.trial)
     y = work.trial
-    return foot_on(walls, patch, (y[0], y[1], y[2]), ball.radius, (-1, 0.0)).gap
+    return foot_on(walls, patch, (y[0], y[1], y[2]), ball.radius, ANYWHERE).gap
 
 
 @kernel

@@ -7,7 +7,7 @@ import math
 from typing import NamedTuple
 
 from engine.constants import IMPACT_ROUNDS, REST_IMPACT
-from engine.contact.query import foot_on
+from engine.contact.query import ANYWHERE, foot_on
 from engine.contact.surface import EXIT, OPEN, RESTITUTION, ROLE_CATCH, ROLE_FLOOR
 from engine.dynamics.impact import strike
 from engine.dynamics.phases import holds_still, mode_on, put_back, rest_mode
@@ -71,7 +71,7 @@ def after_slip(walls, ball, mode, y, slip, out):
     """Return what follows the end of young slip (grown slip) or of grown slip (grip, or slip the other way)."""
     if mode.young == 1:
         return plain(Mode(mode.patch, SLIPPING, 0, 1), QUIET, mode.patch, slip)
-    put_back(walls, ball, Mode(mode.patch, ROLLING, 0, 1), y, (-1, 0.0))
+    put_back(walls, ball, Mode(mode.patch, ROLLING, 0, 1), y, ANYWHERE)
     new = mode_on(walls, ball, mode.patch, y, out)
     if new.regime == ROLLING:
         return plain(new, GRIP, mode.patch, 0.0)
@@ -96,7 +96,7 @@ def after_boundary(walls, ball, mode, y, side, out):
     flying = Mode(-1, FLIGHT, 0, 0)
     if target == OPEN:
         return plain(flying, LIFT_OFF, mode.patch, 0.0)
-    foot = foot_on(walls, target, (y[0], y[1], y[2]), ball.radius, (-1, 0.0))
+    foot = foot_on(walls, target, (y[0], y[1], y[2]), ball.radius, ANYWHERE)
     vn = y[3] * foot.nx + y[4] * foot.ny + y[5] * foot.nz
     if foot.gap > STEP_DOWN or vn > PARTING:
         return plain(flying, LIFT_OFF, mode.patch, 0.0)
@@ -134,7 +134,7 @@ def ended(walls, patch):
 @kernel
 def after_touch(walls, ball, mode, y, patch, out):
     """Return the outcome of meeting `patch`, in flight or while on another wall."""
-    foot = foot_on(walls, patch, (y[0], y[1], y[2]), ball.radius, (-1, 0.0))
+    foot = foot_on(walls, patch, (y[0], y[1], y[2]), ball.radius, ANYWHERE)
     normal = (foot.nx, foot.ny, foot.nz)
     closing = -(y[3] * foot.nx + y[4] * foot.ny + y[5] * foot.nz)
     status = ended(walls, patch)
@@ -156,8 +156,8 @@ def between(walls, ball, pair, y, out):
     first, second = pair
     lost = 0.0
     point = (y[0], y[1], y[2])
-    a = foot_on(walls, first, point, ball.radius, (-1, 0.0))
-    b = foot_on(walls, second, point, ball.radius, (-1, 0.0))
+    a = foot_on(walls, first, point, ball.radius, ANYWHERE)
+    b = foot_on(walls, second, point, ball.radius, ANYWHERE)
     na, nb = (a.nx, a.ny, a.nz), (b.nx, b.ny, b.nz)
     for _ in range(IMPACT_ROUNDS):
         va, vb = along(y, na), along(y, nb)

@@ -15,7 +15,7 @@ from engine.constants import (
     SHORTEST_STEP,
     STEP_LIMIT,
 )
-from engine.contact.query import foot_on, nearest_wall
+from engine.contact.query import ANYWHERE, foot_on, nearest_wall
 from engine.dynamics.phases import mode_on, put_back
 from engine.dynamics.rates import rates
 from engine.dynamics.state import FLIGHT, ROLLING, SLIPPING, STATE, Mode
@@ -105,7 +105,7 @@ def meet_wall(walls, ball, mode, work, free):
         share = locate_touch(walls, ball, patch, work, min(theta, 1.0))
         dense_at(work.dense, share, work.trial)
         y = work.trial
-        foot = foot_on(walls, patch, (y[0], y[1], y[2]), r, (-1, 0.0))
+        foot = foot_on(walls, patch, (y[0], y[1], y[2]), r, ANYWHERE)
         if y[3] * foot.nx + y[4] * foot.ny + y[5] * foot.nz >= 0.0:
             break
         theta, met = share, patch
@@ -156,6 +156,30 @@ def stand_at(walls, ball, mode, work, place):
     return rates(walls, ball, mode, y, guess, work.spare), correction
 
 
+@kernel
+def respond(walls, ball, mode, work, event):
+    """Act on an event at `work.y0`. `event` = (wall met or -1, guard, slip speed)."""
+    met, slot, slip = event
+    if met >= 0:
+        return after_touch(walls, ball, mode, work.y0, met, work.spare)
+    return after_guard(walls, ball, mode, work.y0, (slot, slip), work.spare)
+
+
+@allocating
+def begin(walls, ball, start, work):
+    """Put `work.y0` at the start; return (log with the release, mode, correction m)."""
+    y = work.y0
+    y[:] = start[5 : 5 + STATE]
+    log = Log(np.zeros((1024, SAMPLE)), np.zeros((64, MARK)), 0, 0)
+    mode = first_mode(walls, ball, start, y, work.spare)
+    correction = put_back(walls, ball, mode, y, ANYWHERE)
+    stamp = (start[0], start[5 + STATE])
+    log = add_mark(log, y, mode, (RELEASED, mode.patch, 0.0, (0.0, 0.0, 0.0)), stamp)
+    if start[2] == ROLLING and mode.regime == SLIPPING and mode.young == 1:
+        log = add_mark(log, y, mode, (SLIP_ONSET, mode.patch, 0.0, (0.0, 0.0, 0.0)), stamp)
+    return log, mode, correction
+
+
 @allocating
 def solve(walls, ball, start, options, asked, cancel):
     """Roll one ball from its start to its end.
@@ -178,21 +202,15 @@ def solve(walls, ball, start, options, asked, cancel):
     """
     work = new_work()
     y = work.y0
-    y[:] = start[5 : 5 + STATE]
     t, impact = start[0], start[5 + STATE]
-    log = Log(np.zeros((1024, SAMPLE)), np.zeros((64, MARK)), 0, 0)
-    mode = first_mode(walls, ball, start, y, work.spare)
-    correction = put_back(walls, ball, mode, y, (-1, 0.0))
-    log = add_mark(log, y, mode, (RELEASED, mode.patch, 0.0, (0.0, 0.0, 0.0)), (t, impact))
-    if start[2] == ROLLING and mode.regime == SLIPPING and mode.young == 1:
-        log = add_mark(log, y, mode, (SLIP_ONSET, mode.patch, 0.0, (0.0, 0.0, 0.0)), (t, impact))
+    log, mode, correction = begin(walls, ball, start, work)
     status, steps, upcoming = GOES_ON, 0, 0
     h, free, window, count = FIRST_STEP, 0.0, t, 0
-    fresh, guess = True, (-1, 0.0)
+    fresh, guess = True, ANYWHERE
     contact = rates(walls, ball, mode, y, guess, work.k[0])
     while status == GOES_ON:
         if fresh:
-            contact = rates(walls, ball, mode, y, (-1, 0.0), work.k[0])
+            contact = rates(walls, ball, mode, y, ANYWHERE, work.k[0])
             log = add_sample(log, y, mode, contact, (t, impact, -1))
             fresh = False
         steps += 1
@@ -224,10 +242,7 @@ def solve(walls, ball, start, options, asked, cancel):
         contact, off = stand_at(walls, ball, mode, work, (theta, guess))
         t, correction = t + theta * h, max(correction, off)
         log = add_sample(log, y, mode, contact, (t, impact, -1))
-        if met >= 0:
-            outcome = after_touch(walls, ball, mode, y, met, work.spare)
-        else:
-            outcome = after_guard(walls, ball, mode, y, (slot, contact.slip), work.spare)
+        outcome = respond(walls, ball, mode, work, (met, slot, contact.slip))
         impact += outcome.lost
         mode, status, fresh = outcome.mode, outcome.status, True
         if outcome.kind != QUIET:
@@ -238,7 +253,7 @@ def solve(walls, ball, start, options, asked, cancel):
         count = count + 1 if t - window < CHATTER_TIME else 0
         window = window if count > 0 else t
         status = CHATTERING if count > CHATTER_COUNT and status == GOES_ON else status
-    contact = rates(walls, ball, mode, y, (-1, 0.0), work.k[0])
+    contact = rates(walls, ball, mode, y, ANYWHERE, work.k[0])
     log = add_sample(log, y, mode, contact, (t, impact, -1))
     return log, status, steps, correction
 

@@ -77,11 +77,11 @@ def new_work():
 def warm_start(walls, mode, foot):
     """Return (piece, q) of a foot, to start the next search from."""
     if mode.patch < 0:
-        return -1, 0.0
+        return np.int64(-1), 0.0
     i = foot.piece
     kind = walls.kind[mode.patch]
     if kind == 3:
-        return 0, 0.0
+        return np.int64(0), 0.0
     table = walls.meridian if kind == 2 else walls.knots
     return i, (foot.s - table[i, 0]) / (table[i + 1, 0] - table[i, 0])
 

@@ -1,11 +1,10 @@
-"""A reference case rolled: samples at the asked times, fine samples for extremes, marks, and the state at any event."""
+"""A reference case rolled: samples at the asked times, fine samples for extremes and crossings, and the marks."""
 
 import math
+from collections.abc import Callable
 from dataclasses import dataclass
-from typing import Any
 
 import numpy as np
-from numpy.typing import NDArray
 
 from engine.constants import VERIFY_TOLERANCE
 from engine.contact.query import foot_on, is_inside
@@ -15,22 +14,43 @@ from engine.dynamics.state import FLIGHT, REST, ROLLING, SLIPPING, STATE, BallPa
 from engine.integrate import log as columns
 from engine.integrate.record import Asked, Rows, roll_rows, start_row
 from engine.integrate.result import EventKind, Status
+from engine.reference.cases import Array, Case, Record
 from engine.reference.surfaces import scene_of
 
-Array = NDArray[np.float64]
-FINE = 2.5e-4
-"""s. Spacing of the samples in which extremes and crossings are sought."""
+FINE, FINE_ROWS = 2.5e-4, 40_000
+"""s. Spacing of the samples in which extremes and crossings are sought, and how many of them a long run has."""
+ROW_SPACING = 1e-3
+"""s. Spacing of the samples of a map's row."""
 TOUCHING = 1e-7
 """m. A ball this near to a wall at the start is on it."""
-MODES = {ROLLING: "roll", SLIPPING: "slip", FLIGHT: "flight", REST: "rest"}
 AFTER = 0.05
 """s. How long a case runs past its last sample or event."""
+MODES = {ROLLING: "roll", SLIPPING: "slip", FLIGHT: "flight", REST: "rest"}
+HORIZONS = ("stop_time", "spin_stop_time", "slide_time", "period")
+"""Numbers that are times of the case's own run: it is followed until then."""
+STENCIL = 4
+"""Samples through which a value between samples is interpolated."""
+
+
+class UnfitCaseError(Exception):
+    """A case cannot be set up: the ball does not touch the wall that it should start on."""
+
+
+@dataclass(frozen=True)
+class Moment:
+    """State of the run at an instant: t s, x m, v m/s, w rad/s."""
+
+    t: float
+    x: Array
+    v: Array
+    w: Array
 
 
 @dataclass(frozen=True)
 class CaseRun:
-    """What a case's own run left: ball, scene, raw rows, and the rows at the asked times."""
+    """What a case's own run left: the case, ball, scene, raw rows, and the asked times."""
 
+    case: Case
     ball: BallParams
     scene: Scene
     rows: Rows
@@ -41,130 +61,174 @@ class CaseRun:
         """Times of all samples, s."""
         return self.rows.samples[:, columns.T]
 
-    def at(self, t: float) -> Array:
-        """Return the sample row at an asked time; after rest, the last one."""
+    @property
+    def span(self) -> Array:
+        """Sample rows up to the last sample of the case (of its last event where it has none)."""
+        listed = [sample.t for sample in self.case.samples] or [event.state.t for event in self.case.events]
+        return np.asarray(self.rows.samples[self.t <= max(listed, default=math.inf) + 1e-12])
+
+    def at(self, t: float) -> Array | None:
+        """Return the sample row at an asked time; at rest the last one; None when the run did not come so far."""
         samples = self.rows.samples
-        wanted = samples[:, columns.ASKED] == np.searchsorted(self.asked, t)
-        return np.asarray(samples[np.flatnonzero(wanted)[0]] if wanted.any() else samples[-1])
+        found = np.flatnonzero(samples[:, columns.ASKED] == np.searchsorted(self.asked, t))
+        if len(found):
+            return np.asarray(samples[found[0]])
+        return np.asarray(samples[-1]) if self.rows.status == Status.RESTED else None
 
     def marks(self, *kinds: EventKind) -> Array:
         """Return the event rows of these kinds."""
         marks = self.rows.marks
         return np.asarray(marks[np.isin(marks[:, columns.KIND], [int(kind) for kind in kinds])])
 
-    def before(self, t: float) -> Array:
-        """Return the sample just before the event at t: it carries the event's time and the old mode."""
-        return np.asarray(self.rows.samples[int(np.searchsorted(self.t, t, side="left"))])
+    def before(self, mark: Array) -> Array:
+        """Return the sample just before an event: it carries the event's time and the old mode."""
+        return np.asarray(self.rows.samples[int(np.searchsorted(self.t, mark[columns.MARK_T], side="left"))])
+
+    def crossing(self, value: Callable[[Array], Array], rising: bool, index: int = 0) -> Moment | None:
+        """Return the moment at which `value` of the sample rows passes zero for the index-th time (0: first) in one sense."""
+        rows = self.rows.samples[np.concatenate([[True], np.diff(self.t) > 0.0])]
+        values = value(rows) * (1.0 if rising else -1.0)
+        passed = np.flatnonzero((values[1:-1] < 0.0) & (values[2:] >= 0.0)) + 1
+        if index >= len(passed):
+            return None
+        near = slice(max(0, passed[index] - 1), max(0, passed[index] - 1) + STENCIL)
+        t = _root(rows[near, columns.T], values[near], (rows[passed[index], columns.T], rows[passed[index] + 1, columns.T]))
+        weights = lagrange(rows[near, columns.T], t)
+        return moment_of(weights @ rows[near, columns.Y : columns.Y + STATE], t)
 
 
-def ball_of(case: dict[str, Any]) -> BallParams:
-    """Return the ball of a case with its drag."""
-    ball = case["ball"]
-    drag = (case.get("contact") or {}).get("drag") or {}
-    area = math.pi * float(ball["r"]) ** 2
-    cd = float(drag.get("Cd", 0.0)) * float(drag.get("area", area)) / area
-    return BallParams(float(ball["r"]), float(ball["m"]), float(ball["k"]), cd, 0.0)
+def lagrange(nodes: Array, t: float) -> Array:
+    """Return the weights of the polynomial through values at `nodes`, at t: prod over j != i of (t - t_j)/(t_i - t_j)."""
+    own = np.eye(len(nodes), dtype=bool)
+    ahead = np.where(own, 1.0, t - nodes[None, :])
+    apart = np.where(own, 1.0, nodes[:, None] - nodes[None, :])
+    return np.asarray((ahead / apart).prod(axis=1))
+
+
+def _root(nodes: Array, values: Array, bracket: tuple[float, float]) -> float:
+    """Return where the polynomial through values at `nodes` passes zero within a bracket, by halving."""
+    low, high = bracket
+    for _ in range(60):
+        middle = 0.5 * (low + high)
+        if float(lagrange(nodes, middle) @ values) < 0.0:
+            low = middle
+        else:
+            high = middle
+    return high
+
+
+def moment_of(y: Array, t: float) -> Moment:
+    """Return the moment of a state (13,) at t."""
+    return Moment(float(t), y[0:3], y[3:6], y[6:9])
+
+
+def moment_of_sample(row: Array) -> Moment:
+    """Return the moment of a sample row."""
+    return moment_of(row[columns.Y : columns.Y + STATE], row[columns.T])
+
+
+def moment_of_mark(row: Array) -> Moment:
+    """Return the moment of an event row, just after the event."""
+    return moment_of(row[columns.MARK_Y : columns.MARK_Y + STATE], row[columns.MARK_T])
+
+
+def ball_of(case: Case) -> BallParams:
+    """Return the ball of a case; its drag coefficient is referred to its own cross-section."""
+    if case.ball is None:
+        raise UnfitCaseError("the case has no ball")
+    radius, mass, inertia = case.ball
+    own = math.pi * radius**2
+    area = case.contact.area or own
+    return BallParams(radius, mass, inertia, case.contact.drag * area / own, 0.0)
 
 
 def touched_patch(scene: Scene, ball: BallParams, x: Array) -> int:
-    """Return the patch that a ball centre touches, -1 for none."""
-    walls = prepare(scene)
+    """Return the patch that a ball centre touches.
+
+    Raises
+    ------
+    UnfitCaseError
+        When it touches none.
+    """
+    walls, nearest = prepare(scene), math.inf
     for patch in range(len(scene.kind)):
         foot = foot_on(walls, patch, (x[0], x[1], x[2]), ball.radius, (-1, 0.0))
-        if abs(foot.gap) < TOUCHING and is_inside(walls, patch, foot):
-            return patch
-    return -1
+        if is_inside(walls, patch, foot):
+            nearest = min(nearest, abs(foot.gap))
+            if abs(foot.gap) < TOUCHING:
+                return patch
+    raise UnfitCaseError(f"the ball starts {nearest:.3g} m away from the nearest wall, not on it")
 
 
-def start_of(case: dict[str, Any], scene: Scene, ball: BallParams) -> Start:
-    """Return the start of a case; on a wall the kernels decide the regime from the state."""
-    begin = case["start"]
-    x, v, w = (np.array(begin[key], dtype=np.float64) for key in ("x", "v", "w"))
-    patch = -1 if begin["mode"] == "flight" else touched_patch(scene, ball, x)
-    regime = ROLLING if begin["mode"] == "roll" else -1
-    return Start(float(begin.get("t", 0.0)), x, v, w, patch, 0.0, regime)
-
-
-def asked_times(case: dict[str, Any]) -> Array:
+def asked_times(case: Case) -> Array:
     """Return the times of samples and events of a case, rising, each once."""
-    wanted = [float(entry["t"]) for key in ("samples", "events") for entry in case.get(key) or []]
-    return np.unique(np.array(wanted, dtype=np.float64))
+    return np.unique([state.t for state in (*case.samples, *(event.state for event in case.events))]).astype(np.float64)
 
 
-def last_time(case: dict[str, Any], asked: Array) -> float:
-    """Return the last time that a case speaks of, s: a sample, an event, or a number that is a time of its run."""
-    times = [
-        float(value)
-        for name, value in (case.get("numbers") or {}).items()
-        if isinstance(value, int | float) and name.endswith(("_time", "_at"))
-    ]
-    return max([0.0, *asked.tolist(), *times])
+def _end_of(case: Case, asked: Array) -> float:
+    """Return until when a case is followed, s."""
+    numbers = [case.numbers[key] for key in HORIZONS if isinstance(case.numbers.get(key), int | float)]
+    return float(max([*asked, *numbers], default=0.0)) + AFTER
 
 
-def run_case(case: dict[str, Any]) -> CaseRun:
+def run_case(case: Case) -> CaseRun:
     """Roll a case from its start to a little past its last sample or event."""
-    scene, ball = scene_of(case), ball_of(case)
-    asked = asked_times(case)
-    end = last_time(case, asked) + AFTER
-    start = start_of(case, scene, ball)
-    rows = roll_rows(prepare(scene), ball, start_row(start), Asked(end, VERIFY_TOLERANCE, FINE, asked))
-    return CaseRun(ball, scene, rows, asked)
+    begin, ball, asked = case.start, ball_of(case), asked_times(case)
+    if begin is None or begin.x is None or begin.v is None or begin.w is None:
+        raise UnfitCaseError("the case has no start")
+    end = _end_of(case, asked)
+    speed = float(np.linalg.norm(begin.v))
+    scene = scene_of(case, ball.radius, speed * end + 0.5 * case.gravity * end**2)
+    flying = begin.mode == "flight"
+    patch = -1 if flying else touched_patch(scene, ball, begin.x)
+    regime = ROLLING if begin.mode == "roll" else -1
+    start = Start(begin.t, begin.x, begin.v, begin.w, patch, 0.0, regime)
+    spacing = max(FINE, (end - begin.t) / FINE_ROWS)
+    rows = roll_rows(prepare(scene), ball, start_row(start), Asked(end, VERIFY_TOLERANCE, spacing, asked))
+    return CaseRun(case, ball, scene, rows, asked)
 
 
-def run_row(case: dict[str, Any], row: dict[str, Any]) -> tuple[str, float]:
+def run_row(case: Case, row: Record) -> tuple[str, float]:
     """Roll one row of a well map; return its outcome (exit, drop, stays) and the time of it (nan: stays).
 
     The start is x = (R - r, 0, 0), v = speed (0, cos, -sin) of the angle down, rolling without spin about the normal.
     """
-    scene, ball = scene_of(case, float(row["mu"])), ball_of(case)
-    numbers = case["numbers"]
+    ball = ball_of(case)
+    cylinder = next(surface for surface in case.surfaces if surface["type"] == "cylinder")
+    end, depth = float(case.numbers["t_max"]), float(case.numbers["drop_depth"])
+    scene = scene_of(case, ball.radius, 0.0, float(row["mu"]))
     angle, speed = math.radians(float(row["down_angle_deg"])), float(row["speed"])
     v = speed * np.array([0.0, math.cos(angle), -math.sin(angle)])
     n = np.array([-1.0, 0.0, 0.0])
-    x = np.array([float(case["surfaces"][0]["radius"]) - ball.radius, 0.0, 0.0])
+    x = np.array([cylinder["radius"] - ball.radius, 0.0, 0.0])
     start = Start(0.0, x, v, np.cross(n, v) / ball.radius, touched_patch(scene, ball, x), 0.0, -1)
-    end = float(numbers["t_max"])
-    rows = roll_rows(prepare(scene), ball, start_row(start), Asked(end, VERIFY_TOLERANCE, FINE))
-    return first_way_out(rows.samples, float(numbers["drop_depth"]))
+    rows = roll_rows(prepare(scene), ball, start_row(start), Asked(end, VERIFY_TOLERANCE, ROW_SPACING))
+    return first_way_out(rows.samples, depth)
 
 
 def first_way_out(samples: Array, depth: float) -> tuple[str, float]:
-    """Return which level the centre passes first, z = 0 upward or z = -depth, and when."""
+    """Return which level the centre passes first, z = 0 upward or z = -depth, and when (s)."""
     t, z, vz = samples[:, columns.T], samples[:, columns.Y + 2], samples[:, columns.Y + 5]
     out = np.flatnonzero((z[:-1] < 0.0) & (z[1:] >= 0.0))
     down = np.flatnonzero((z[:-1] > -depth) & (z[1:] <= -depth))
-    first_out = crossing(t, z, vz, (int(out[0]), int(out[0]) + 1), 0.0) if len(out) else math.inf
-    first_down = crossing(t, z, vz, (int(down[0]), int(down[0]) + 1), -depth) if len(down) else math.inf
+    first_out = level_passed(t, z, vz, (out[0], 0.0)) if len(out) else math.inf
+    first_down = level_passed(t, z, vz, (down[0], -depth)) if len(down) else math.inf
     if math.isinf(first_out) and math.isinf(first_down):
         return "stays", math.nan
     return ("exit", first_out) if first_out < first_down else ("drop", first_down)
 
 
-def crossing(t: Array, value: Array, rate: Array, pair: tuple[int, int], level: float) -> float:
-    """Return when a quantity passes `level` between two samples, by a cubic through values and rates."""
-    i, j = pair
-    h = t[j] - t[i]
-    if h <= 0.0:
-        return float(t[i])
-    a, b, c, d = value[i] - level, h * rate[i], value[j] - level, h * rate[j]
-    roots = np.roots([2 * a + b - 2 * c + d, -3 * a - 2 * b + 3 * c - d, b, a])
-    real = roots[np.abs(roots.imag) < 1e-9].real
-    inside = real[(real > -1e-9) & (real < 1 + 1e-9)]
-    return float(t[i] + h * (inside.min() if len(inside) else a / (a - c)))
-
-
-def ended_at_rest(run: CaseRun) -> bool:
-    """Return whether the run ended with the ball at rest."""
-    return run.rows.status == Status.RESTED
-
-
-def state_of(row: Array) -> tuple[Array, Array, Array]:
-    """Return x, v, w of a sample row."""
-    y = row[columns.Y : columns.Y + STATE]
-    return y[0:3], y[3:6], y[6:9]
-
-
-def state_of_mark(row: Array) -> tuple[Array, Array, Array]:
-    """Return x, v, w of an event row."""
-    y = row[columns.MARK_Y : columns.MARK_Y + STATE]
-    return y[0:3], y[3:6], y[6:9]
+def level_passed(t: Array, value: Array, rate: Array, place: tuple[int, float]) -> float:
+    """Return when a quantity passes a level between samples i and i+1, by the cubic through values and rates, s."""
+    i, level = place
+    h = float(t[i + 1] - t[i])
+    a, b, c, d = value[i] - level, h * rate[i], value[i + 1] - level, h * rate[i + 1]
+    low, high = 0.0, 1.0
+    for _ in range(60):
+        q = 0.5 * (low + high)
+        here = a + q * (b + q * (3.0 * (c - a) - 2.0 * b - d + q * (2.0 * (a - c) + b + d)))
+        if (here > 0.0) == (a > 0.0):
+            low = q
+        else:
+            high = q
+    return float(t[i] + h * high)
