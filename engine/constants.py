@@ -43,8 +43,8 @@ STEP_SAFETY = 0.9
 STEP_SHRINK = 0.2
 STEP_GROW = 5.0
 """Usual limits of step-size control (Hairer, Norsett, Wanner, Solving ODE I, II.4)."""
-FIRST_STEP = 1e-4
-"""s. First trial step after a release or an event; grows fivefold a step."""
+FIRST_STEP = 1e-3
+"""s. First trial step after a release or an event; shrinks or grows as the error says."""
 LONGEST_STEP = 0.02
 """s. Longest step; keeps the sampled path smooth on the drawing."""
 SHORTEST_STEP = 1e-13

@@ -24,7 +24,8 @@ TURN_SHARE = 10.0
 
 class Heading(NamedTuple):
     """Directions at the start of a step, of the slip velocity and of the rolling spin (zero when there is none), and the
-    speed below which either counts as stopped, m/s."""
+    speed below which either counts as stopped, m/s.
+    """
 
     ux: float
     uy: float
@@ -91,7 +92,7 @@ def fill_slip_guards(law, mode, contact, heading, out):
 def guard_at(walls, ball, mode, work, place):
     """Return guard `slot` at the share theta of the step. `place` = (theta, slot, piece, q, heading)."""
     theta, slot, piece, q, heading = place
-    dense_at(work.dense, theta, work.trial)
+    dense_at(work, theta, work.trial)
     contact = rates(walls, ball, mode, work.trial, (piece, q), work.spare)
     fill_guards(walls, ball, mode, contact, heading, work.guards)
     return work.guards[slot]
@@ -139,7 +140,7 @@ def illinois(walls, ball, mode, work, bracket):
 @kernel
 def gap_at(walls, ball, patch, work, theta):
     """Return the gap to a wall at the share theta of the step, m."""
-    dense_at(work.dense, theta, work.trial)
+    dense_at(work, theta, work.trial)
     y = work.trial
     return foot_on(walls, patch, (y[0], y[1], y[2]), ball.radius, ANYWHERE).gap
 
@@ -188,22 +189,37 @@ def is_end_of_turn(mode, contact, ball, slot, still):
 
 
 @kernel
-def first_guard(walls, ball, mode, work, step):
-    """Return (theta, slot) of the first guard that falls below zero in the step, (2, -1) if none does.
+def falls(work, slot):
+    """Return whether a guard ends the step below zero; a boundary counts only when the foot moves outward."""
+    value = work.after[slot]
+    return value < 0.0 and (slot < SIDE or value < work.before[slot])
 
-    `step` = (Contact at the end, heading at the start, piece, q); `work.before` holds the guards at the start.
+
+@kernel
+def any_falls(work):
+    """Return whether any guard ends the step below zero."""
+    for slot in range(GUARDS):
+        if falls(work, slot):
+            return True
+    return False
+
+
+@kernel
+def first_guard(walls, ball, mode, work, start):
+    """Return (theta, slot) of the first guard that falls below zero in the step, (2, -1) if none truly does.
+
+    `start` = (heading, piece, q); `work.before` and `work.after` hold the guards, `work.dense` the extension.
     """
-    contact, heading, piece, q = step
-    fill_guards(walls, ball, mode, contact, heading, work.after)
+    heading, piece, q = start
     theta, slot = 2.0, -1
     for j in range(GUARDS):
-        if work.after[j] >= 0.0 or (j >= SIDE and work.after[j] >= work.before[j]):
+        if not falls(work, j):
             continue
         high = min(theta, 1.0)
         if high < 1.0 and guard_at(walls, ball, mode, work, (high, j, piece, q, heading)) >= 0.0:
             continue
         share = locate_guard(walls, ball, mode, work, (high, j, work.before[j], piece, q, heading))
-        dense_at(work.dense, share, work.trial)
+        dense_at(work, share, work.trial)
         there = rates(walls, ball, mode, work.trial, (piece, q), work.spare)
         if is_end_of_turn(mode, there, ball, j, heading.still):
             theta, slot = share, j

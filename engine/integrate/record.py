@@ -10,7 +10,6 @@ from engine.contact.surface import SWEPT_INSIDE, Scene
 from engine.contact.walls import Walls, prepare
 from engine.dynamics.state import STATE, BallParams, Start
 from engine.integrate import log as columns
-
 from engine.integrate.result import Event, EventKind, Status, Trajectory
 from engine.integrate.solve import Options, solve
 

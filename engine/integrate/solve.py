@@ -5,32 +5,20 @@ from typing import NamedTuple
 
 import numpy as np
 
-from engine.constants import (
-    CHATTER_COUNT,
-    CHATTER_TIME,
-    FIRST_STEP,
-    LONGEST_STEP,
-    POLL_STEPS,
-    REACH_SHARE,
-    SHORTEST_STEP,
-    STEP_LIMIT,
-)
-from engine.contact.query import ANYWHERE, foot_on, nearest_wall
+from engine.constants import CHATTER_COUNT, CHATTER_TIME, FIRST_STEP, POLL_STEPS, STEP_LIMIT
+from engine.contact.query import ANYWHERE
 from engine.dynamics.phases import mode_on, put_back
 from engine.dynamics.rates import rates
 from engine.dynamics.state import FLIGHT, ROLLING, SLIPPING, STATE, Mode
-from engine.integrate.events import fill_guards, first_guard, heading_of, locate_touch, still_speed
+from engine.integrate.advance import accept, advance, stand_at
 from engine.integrate.log import MARK, SAMPLE, room, write_mark, write_sample
 from engine.integrate.outcome import GOES_ON, QUIET, SLIP_ONSET, after_guard, after_touch
-from engine.integrate.step import dense_at, fill_dense, new_work, next_size, try_step, warm_start
+from engine.integrate.step import dense_at, fill_dense, new_work
 from engine.kernel import allocating, kernel
 
 RELEASED = 0
 TIME_UP, CHATTERING, STEPS_UP, CANCELLED, NO_FIT, NOT_FINITE = 3, 4, 5, 6, 7, 9
 """Values of `result.Status`."""
-TOUCHING = 1e-9
-"""m. A wall this far inside the ball in the same step is also met."""
-
 
 class Options(NamedTuple):
     """`end` s; `tolerance` (see constants.TOLERANCE); `spacing` s between samples at most (0: steps and asked times only)."""
@@ -76,84 +64,29 @@ def first_mode(walls, ball, start, y, out):
     return mode_on(walls, ball, patch, y, out)
 
 
-@kernel
-def speed_of(y):
-    """Return |v|, m/s."""
-    return math.sqrt(y[3] * y[3] + y[4] * y[4] + y[5] * y[5])
-
-
-@kernel
-def fit_step(walls, ball, mode, work, plan):
-    """Make one step that meets the tolerance. `plan` = (h, tolerance, piece, q); returns (h used, h next, Contact)."""
-    h, tolerance, piece, q = plan
-    while True:
-        error, contact = try_step(walls, ball, mode, work, (h, tolerance, piece, q))
-        if error <= 1.0 or h <= SHORTEST_STEP:
-            return h, next_size(h, error), contact
-        h = max(SHORTEST_STEP, min(0.9 * h, next_size(h, error)))
-
-
-@kernel
-def meet_wall(walls, ball, mode, work, free):
-    """Return (theta, patch, free way) of the first wall met in the step just made; theta 2 when none is."""
-    y1, r = work.y1, ball.radius
-    gap, patch, way = nearest_wall(walls, (y1[0], y1[1], y1[2]), r, mode.patch)
-    theta, met = 2.0, -1
-    for _ in range(4):
-        if patch < 0 or gap >= (0.0 if met < 0 else -TOUCHING) or patch == met:
-            break
-        share = locate_touch(walls, ball, patch, work, min(theta, 1.0))
-        dense_at(work.dense, share, work.trial)
-        y = work.trial
-        foot = foot_on(walls, patch, (y[0], y[1], y[2]), r, ANYWHERE)
-        if y[3] * foot.nx + y[4] * foot.ny + y[5] * foot.nz >= 0.0:
-            break
-        theta, met = share, patch
-        gap, patch, way = nearest_wall(walls, (y[0], y[1], y[2]), r, mode.patch)
-    return theta, met, (way if met < 0 else 0.0)
-
-
 @allocating
 def sample_step(walls, ball, mode, work, log, span):
     """Add the samples that fall within a step (or the part of it up to an event).
 
-    `span` = (t, h, share, impact loss, guess, asked times, next asked, spacing). Returns (log, next asked).
+    `span` = (t, impact loss, Step, asked times, next asked, spacing, tolerance). Returns (log, next asked).
     """
-    t, h, share, impact, guess, asked, upcoming, spacing = span
+    t, impact, step, asked, upcoming, spacing, tolerance = span
+    h, share, guess = step.h, min(step.theta, 1.0), (step.piece, step.q)
+    pieces = int(math.ceil(share * h / spacing)) if spacing > 0.0 else 0
+    wanted = upcoming < asked.shape[0] and asked[upcoming] < t + share * h
+    if (pieces > 1 or wanted) and not step.extended:
+        fill_dense(walls, ball, mode, work, (h, tolerance, step.piece, step.q))
     while upcoming < asked.shape[0] and asked[upcoming] < t + share * h:
-        dense_at(work.dense, (asked[upcoming] - t) / h, work.trial)
+        dense_at(work, (asked[upcoming] - t) / h, work.trial)
         contact = rates(walls, ball, mode, work.trial, guess, work.spare)
         log = add_sample(log, work.trial, mode, contact, (asked[upcoming], impact, upcoming))
         upcoming += 1
-    if spacing > 0.0:
-        pieces = int(math.ceil(share * h / spacing))
-        for i in range(1, pieces):
-            theta = share * i / pieces
-            dense_at(work.dense, theta, work.trial)
-            contact = rates(walls, ball, mode, work.trial, guess, work.spare)
-            log = add_sample(log, work.trial, mode, contact, (t + theta * h, impact, -1))
+    for i in range(1, pieces):
+        theta = share * i / pieces
+        dense_at(work, theta, work.trial)
+        contact = rates(walls, ball, mode, work.trial, guess, work.spare)
+        log = add_sample(log, work.trial, mode, contact, (t + theta * h, impact, -1))
     return log, upcoming
-
-
-@kernel
-def longest(walls, mode, y, free, reach):
-    """Return the longest step that cannot carry the ball past a wall it has not looked at, s."""
-    way = max(free, reach)
-    speed = speed_of(y)
-    g = 10.0 if mode.regime == FLIGHT else 30.0
-    return min(LONGEST_STEP, (math.sqrt(speed * speed + 2.0 * g * way) - speed) / g)
-
-
-@kernel
-def stand_at(walls, ball, mode, work, place):
-    """Put `work.y0` at the share theta of the step. `place` = (theta, guess); returns (Contact there, correction)."""
-    theta, guess = place
-    y = work.y0
-    dense_at(work.dense, theta, work.trial)
-    for j in range(STATE):
-        y[j] = work.trial[j]
-    correction = put_back(walls, ball, mode, y, guess)
-    return rates(walls, ball, mode, y, guess, work.spare), correction
 
 
 @kernel
@@ -206,8 +139,8 @@ def solve(walls, ball, start, options, asked, cancel):
     log, mode, correction = begin(walls, ball, start, work)
     status, steps, upcoming = GOES_ON, 0, 0
     h, free, window, count = FIRST_STEP, 0.0, t, 0
-    fresh, guess = True, ANYWHERE
-    contact = rates(walls, ball, mode, y, guess, work.k[0])
+    fresh = True
+    contact = rates(walls, ball, mode, y, ANYWHERE, work.k[0])
     while status == GOES_ON:
         if fresh:
             contact = rates(walls, ball, mode, y, ANYWHERE, work.k[0])
@@ -217,32 +150,20 @@ def solve(walls, ball, start, options, asked, cancel):
         status = limits(t, options, steps, cancel, y)
         if status != GOES_ON:
             break
-        guess = warm_start(walls, mode, contact.foot)
-        heading = heading_of(contact, ball, still_speed(options.tolerance, speed_of(y), ball.radius))
-        fill_guards(walls, ball, mode, contact, heading, work.before)
-        h = min(h, options.end - t, longest(walls, mode, y, free, REACH_SHARE * ball.radius))
-        h, h_next, contact = fit_step(walls, ball, mode, work, (h, options.tolerance, guess[0], guess[1]))
-        fill_dense(work, h)
-        theta, slot = first_guard(walls, ball, mode, work, (contact, heading, guess[0], guess[1]))
-        met = -1
-        free -= 1.01 * h * max(speed_of(y), speed_of(work.y1)) + 1e-9
-        if free < 0.0:
-            share, met, free = meet_wall(walls, ball, mode, work, free)
-            theta, met = (share, met) if share < theta else (theta, -1)
-        span = (t, h, min(theta, 1.0), impact, guess, asked, upcoming, options.spacing)
+        step = advance(walls, ball, mode, work, (h, options.end - t, free, contact, options.tolerance))
+        span = (t, impact, step, asked, upcoming, options.spacing, options.tolerance)
         log, upcoming = sample_step(walls, ball, mode, work, log, span)
-        if theta > 1.0:
-            t += h
-            y[:] = work.y1
-            work.k[0] = work.k[6]
-            correction = max(correction, put_back(walls, ball, mode, y, warm_start(walls, mode, contact.foot)))
+        free = step.free
+        if step.theta > 1.0:
+            t += step.h
+            h, contact = step.h_next, step.contact
+            correction = max(correction, accept(walls, ball, mode, work, contact))
             log = add_sample(log, y, mode, contact, (t, impact, -1))
-            h = h_next
             continue
-        contact, off = stand_at(walls, ball, mode, work, (theta, guess))
-        t, correction = t + theta * h, max(correction, off)
+        contact, off = stand_at(walls, ball, mode, work, step)
+        t, h, correction = t + step.theta * step.h, step.h, max(correction, off)
         log = add_sample(log, y, mode, contact, (t, impact, -1))
-        outcome = respond(walls, ball, mode, work, (met, slot, contact.slip))
+        outcome = respond(walls, ball, mode, work, (step.met, step.slot, contact.slip))
         impact += outcome.lost
         mode, status, fresh = outcome.mode, outcome.status, True
         if outcome.kind != QUIET:
