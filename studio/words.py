@@ -59,6 +59,8 @@ FINDING_WORDS = {
     FindingKind.OUT_OF_SITE: "Outside the site",
     FindingKind.TWO_WALLS: "Touches two walls",
 }
+ENDING_WORDS = {"arrived": "arrives", "rested": "rests", "escaped": "is lost", "out_of_bounds": "is lost"}
+"""Last part of the verdict, by how the ball ended."""
 ADDING = {
     "straight": "a straight piece of even grade",
     "bend": "an arc in plan",
@@ -129,9 +131,12 @@ def verdict_of(workspace: "Workspace") -> Verdict:
     if roll.verdict != "clears":
         fails = worst is not None and worst.severity is Severity.FAILS
         reason = finding_title(workspace, worst) if worst is not None and fails else _ending(roll)
-        return Verdict(f"Fails after {roll.duration:.1f} s · {reason}", "fails")
+        end = f"{ENDING_WORDS.get(roll.outcome, 'ends')} after {roll.duration:.1f} s"
+        return Verdict(f"Fails · {reason} · {end}", "fails")
     parts = [f"Clears in {roll.duration:.1f} s", *_least_margin(workspace, roll)]
-    thin = any(entry.severity is Severity.THIN for entry in roll.findings)
+    thin = worst is not None and worst.severity is Severity.THIN
+    if worst is not None and thin and len(parts) == 1:
+        parts.append(finding_title(workspace, worst))
     return Verdict(" · ".join(parts), "thin" if thin else "clears")
 
 

@@ -2,7 +2,7 @@
 
 from typing import Any, get_args
 
-from PySide6.QtCore import QSignalBlocker, Qt, Slot
+from PySide6.QtCore import QSignalBlocker, Qt, QTimer, Slot
 from PySide6.QtWidgets import QComboBox, QGridLayout, QHBoxLayout, QLabel, QSizePolicy, QWidget
 
 from engine.model.design import LengthUnit
@@ -12,6 +12,9 @@ from studio.words import Verdict, verdict_of
 from studio.workspace import Workspace
 
 HEIGHT = 44
+LONG_MS = 3000
+"""ms of rolling after which the line says why: the first start compiles the kernels for this machine."""
+LONG_WORDS = "Rolling … a first start takes a minute or two, to prepare for this machine"
 
 
 class VerdictLine(QLabel):
@@ -62,6 +65,10 @@ class Header(QWidget):
         for unit in get_args(LengthUnit):
             self.units.addItem(unit, unit)
         self.units.activated.connect(self._choose_units)
+        self._long = QTimer(self)
+        self._long.setSingleShot(True)
+        self._long.setInterval(LONG_MS)
+        self._long.timeout.connect(self._explain)
         self._lay_out()
         for signal in (workspace.designChanged, workspace.rolled, workspace.fileChanged, workspace.opened):
             signal.connect(self.refresh)
@@ -104,11 +111,21 @@ class Header(QWidget):
         self.name.setToolTip(str(workspace.path) if workspace.path is not None else "Not saved yet")
         self.edited.setText("edited" if workspace.dirty else "")
         verdict = verdict_of(workspace)
+        waiting = workspace.roll is None and not workspace.problem
+        if not waiting:
+            self._long.stop()
+        elif not self._long.isActive():
+            self._long.start()
         mark = {"clears": "●", "thin": "◆", "fails": "▲"}.get(verdict.state, "○")
         self.verdict.show_verdict(verdict, mark, int(self.width() * 0.46))
         self._show_runs()
         with QSignalBlocker(self.units):
             self.units.setCurrentIndex(self.units.findData(workspace.design.units))
+
+    @Slot()
+    def _explain(self) -> None:
+        """Say why the first roll takes long."""
+        self.verdict.show_verdict(Verdict(LONG_WORDS, "none"), "○", int(self.width() * 0.46))
 
     def _show_runs(self) -> None:
         """Offer the runs where there are several."""

@@ -103,8 +103,8 @@ class Inspector(QFrame):
         pieces: list[Piece] = []
         run = self._workspace.run
         if run is not None:
-            pieces.append((run, ("runs", design.runs.index(run)), ["ball", "pair", "name", "start", "release"]))
-        pieces.append((design, (), ["name", "units", "note"]))
+            pieces.append((run, ("runs", design.runs.index(run)), ["name", "ball", "pair", "release", "start"]))
+        pieces.append((design, (), ["name", "note"]))
         if design.site is not None:
             pieces.append((design.site, ("site",), ["height", "floor", "reach", "outline"]))
         return pieces

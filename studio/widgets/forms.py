@@ -68,6 +68,10 @@ class FieldForm(QWidget):
             offered = self._entries(spec) or {choice: kind_words(choice) for choice in spec.choices}
             if len(offered) > 1:
                 self._add_row(spec, path, getattr(part, "kind", ""), offered)
+            else:
+                self.heading(spec.label)
+        else:
+            self.heading(spec.label)
         self.add(part, path)
 
     def _add_row(self, spec: FieldSpec, path: Path, value: Any, entries: Mapping[Any, str] | None) -> None:
@@ -77,11 +81,16 @@ class FieldForm(QWidget):
         label = QLabel(spec.label)
         label.setProperty("role", "soft")
         label.setBuddy(editor)
-        label.setWordWrap(True)
         label.setContentsMargins(0, 4, 0, 0)
         row = self._grid.rowCount()
-        self._grid.addWidget(label, row, 0, Qt.AlignmentFlag.AlignTop)
-        self._grid.addWidget(editor, row, 1)
+        if spec.kind in ("reference", "points"):  # long ones: over the whole width, below the label
+            self._grid.addWidget(label, row, 0, 1, 2)
+            self._grid.addWidget(editor, row + 1, 0, 1, 2)
+        else:
+            label.setWordWrap(True)
+            label.setFixedWidth(LABEL_WIDTH)
+            self._grid.addWidget(label, row, 0, Qt.AlignmentFlag.AlignTop)
+            self._grid.addWidget(editor, row, 1, Qt.AlignmentFlag.AlignTop)
         editor.show_value(value)
         editor.committed.connect(lambda changed, merge, path=path: self.edited.emit(path, changed, merge))
         self.rows.append(Row(path, editor))

@@ -44,7 +44,8 @@ def test_verdict_of_a_ball_that_stops_fails(qapp):
     workspace = rolled(level_run(speed=0.05, length=5.0))
     verdict = words.verdict_of(workspace)
     assert verdict.state == "fails"
-    assert verdict.text.startswith("Fails after ")
+    assert verdict.text.startswith("Fails · ")
+    assert verdict.text.endswith(f" after {workspace.roll.duration:.1f} s")
 
 
 def test_thin_findings_turn_the_line_to_thin(qapp):
