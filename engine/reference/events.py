@@ -1,130 +1,145 @@
-"""Named events of a reference case found in the case's own run."""
+"""Named events of a case found in its own run, by kind and order, never by the time that the case gives.
 
-import math
-from typing import Any, NamedTuple
+The n-th event of a name goes with the n-th mark of its kind; lowest points, tops and returns are crossings of a velocity.
+"""
+
+import re
+from collections.abc import Callable
+from typing import NamedTuple
 
 import numpy as np
-from numpy.typing import NDArray
 
 from engine.integrate import log as columns
 from engine.integrate.result import EventKind
-from engine.reference.run import CaseRun, crossing, state_of, state_of_mark
+from engine.reference.cases import Array
+from engine.reference.run import CaseRun, Moment, moment_of_mark, moment_of_sample
 
-Array = NDArray[np.float64]
-
-
-class Happened(NamedTuple):
-    """Time (s) and state of an event of the own run."""
-
-    t: float
-    x: Array
-    v: Array
-    w: Array
+Finder = Callable[[CaseRun, int], Moment | None]
+ORDINALS = {"first": 0, "second": 1, "third": 2, "fourth": 3, "fifth": 4}
+NUMBERED = re.compile(r"^impact (\d+)$")
 
 
-STILL = 1e-6
-"""Share of the largest vertical speed below which the ball counts as not moving up or down: rounding has a sign too."""
-BEFORE = ("landing", "strikes", "first contact")
-"""Touch-downs of which the case gives the state before the impact."""
-TOUCH = ("after the impact", "after that impact", "impact ")
-MARKED: tuple[tuple[tuple[str, ...], tuple[EventKind, ...]], ...] = (
-    (("contact lost", "centre above"), (EventKind.PATCH, EventKind.LIFT_OFF)),
-    (("lift-off",), (EventKind.LIFT_OFF,)),
-    (("rolling starts",), (EventKind.GRIP,)),
-    (("slip starts",), (EventKind.SLIP_ONSET,)),
-    (("slip speed passes through zero",), (EventKind.SLIP_REVERSAL,)),
-    (("stops for good",), (EventKind.REST,)),
-    (TOUCH, (EventKind.TOUCH_DOWN,)),
-)
-"""Beginnings of a name and the kinds of event that it means."""
+class Rule(NamedTuple):
+    """Words of a name (any of them), how its moment is found, and the family whose order it counts in."""
+
+    words: tuple[str, ...]
+    finder: Finder
+    family: str
 
 
-def turning_times(run: CaseRun, upward: bool) -> list[float]:
-    """Return the times at which the vertical velocity passes zero, from below to above when `upward`."""
-    samples = run.rows.samples
-    t, vz = samples[:, columns.T], samples[:, columns.Y + 5]
-    sign = 1.0 if upward else -1.0
-    slope = _slopes(t, vz)
-    moving = np.flatnonzero(np.abs(vz) > STILL * np.abs(vz).max())
-    turns = np.flatnonzero((sign * vz[moving[:-1]] < 0.0) & (sign * vz[moving[1:]] > 0.0))
-    return [crossing(t, vz, slope, (int(moving[i]), int(moving[i + 1])), 0.0) for i in turns]
+def nth_mark(run: CaseRun, index: int, *kinds: EventKind) -> Array | None:
+    """Return the index-th event row of these kinds, None when there are fewer."""
+    marks = run.marks(*kinds)
+    return np.asarray(marks[index]) if index < len(marks) else None
 
 
-def _slopes(t: Array, value: Array) -> Array:
-    """Return the slopes of a sampled quantity, by parabolas; repeated times (events) are skipped."""
-    keep = np.concatenate([[True], np.diff(t) > 0.0])
-    slope = np.gradient(value[keep], t[keep], edge_order=2)
-    return np.asarray(np.interp(t, t[keep], slope))
+def _mark(*kinds: EventKind) -> Finder:
+    """Return a finder of the state at the index-th event of these kinds."""
+
+    def find(run: CaseRun, index: int) -> Moment | None:
+        mark = nth_mark(run, index, *kinds)
+        return None if mark is None else moment_of_mark(mark)
+
+    return find
 
 
-def axial_period(run: CaseRun) -> float:
-    """Return the period of the up and down motion, s: twice the time between a lowest and the next highest point, or the
-    time between two alike."""
-    low, high = turning_times(run, True), turning_times(run, False)
-    if len(low) > 1:
-        return low[1] - low[0]
-    if len(high) > 1:
-        return high[1] - high[0]
-    return 2.0 * abs(high[0] - low[0]) if low and high else math.nan
+def before_touch(run: CaseRun, index: int = 0) -> Moment | None:
+    """Return the state just before the index-th touch-down."""
+    mark = nth_mark(run, index, EventKind.TOUCH_DOWN)
+    return None if mark is None else moment_of_sample(run.before(mark))
 
 
-def found_by_motion(run: CaseRun, name: str) -> float | None:
-    """Return the time of an event that is a turning point, None for other names."""
-    low = ("first lowest point", "first passage of the lowest point")
-    if name in low:
-        return next(iter(turning_times(run, True)), math.nan)
-    if name == "top":
-        return next(iter(turning_times(run, False)), math.nan)
-    if name == "first return":
-        times = turning_times(run, False)
-        return times[1] if len(times) > 1 else math.nan
-    if name == "one axial period":
-        return float(run.t[0]) + axial_period(run)
-    return None
+def lowest_point(run: CaseRun, index: int = 0) -> Moment | None:
+    """Return where the centre stops sinking for the index-th time."""
+    return run.crossing(lambda rows: rows[:, columns.Y + 5], True, index)
 
 
-def happened(run: CaseRun, event: dict[str, Any], order: int) -> Happened | None:
-    """Return what the own run has for a named event.
+def highest_point(run: CaseRun, index: int = 0) -> Moment | None:
+    """Return where the centre stops climbing for the index-th time."""
+    return run.crossing(lambda rows: rows[:, columns.Y + 5], False, index)
 
-    Parameters
-    ----------
-    run : CaseRun
-    event : dict
-        Name, t and state of the case.
-    order : int
-        How many events of the same family came before it in the case.
 
-    Returns
-    -------
-    Happened or None
-        None when the run has no such event.
+def _return_along(run: CaseRun, way: Array, index: int) -> Moment | None:
+    """Return when the motion along a unit vector (3,) is back at its start: f = (x - x0) v0 + (v - v0) a0/nu^2 rises through 0.
+
+    On a closed orbit this holds exactly after every period, whatever the scale nu; half way round f falls.
     """
-    name = str(event["name"])
-    t = found_by_motion(run, name)
-    if t is not None:
-        return None if math.isnan(t) else Happened(t, *state_of(run.at(float(event["t"]))))
-    if name.startswith(BEFORE):
-        marks = run.marks(EventKind.TOUCH_DOWN)
-        if order >= len(marks):
-            return None
-        row = run.before(float(marks[order, columns.MARK_T]))
-        return Happened(float(row[columns.T]), *state_of(row))
-    marks = run.marks(*kinds_of(name))
-    if order >= len(marks):
-        return None
-    return Happened(float(marks[order, columns.MARK_T]), *state_of_mark(marks[order]))
+    rows = run.rows.samples
+    y0 = rows[0, columns.Y : columns.Y + 6]
+    x0, v0 = float(way @ y0[:3]), float(way @ y0[3:6])
+    later = rows[np.flatnonzero(run.t > run.t[0])[0]]
+    a0 = (float(way @ later[columns.Y + 3 : columns.Y + 6]) - v0) / (later[columns.T] - run.t[0])
+    nu2 = run.case.gravity / run.ball.radius
+
+    def round_trip(samples: Array) -> Array:
+        x, v = samples[:, columns.Y : columns.Y + 3] @ way, samples[:, columns.Y + 3 : columns.Y + 6] @ way
+        return np.asarray((x - x0) * v0 + (v - v0) * a0 / nu2)
+
+    return run.crossing(round_trip, True, index)
 
 
-def kinds_of(name: str) -> tuple[EventKind, ...]:
-    """Return the kinds of event that a name means; none for an unknown name."""
-    for beginnings, kinds in MARKED:
-        if name.startswith(beginnings):
-            return kinds
-    return ()
+def axial_period(run: CaseRun, index: int = 0) -> Moment | None:
+    """Return when the motion along the axis of the case's cylinder is back at its start."""
+    axes = [surface["axis"] for surface in run.case.surfaces if surface["type"] == "cylinder"]
+    return _return_along(run, axes[0], index) if axes else None
 
 
-def family(name: str) -> str:
-    """Return the family within which events are counted."""
-    if name.startswith(BEFORE):
-        return "before"
-    return ",".join(kind.name for kind in kinds_of(name)) or name
+def full_return(run: CaseRun, index: int = 0) -> Moment | None:
+    """Return when a swing is back at its start: from rest at every second highest point, else with its vertical motion."""
+    if not run.rows.samples[0, columns.Y + 3 : columns.Y + 6].any():
+        return highest_point(run, 2 * index + 1)
+    return _return_along(run, np.array([0.0, 0.0, 1.0]), index)
+
+
+lift_off = _mark(EventKind.LIFT_OFF)
+above_edge = _mark(EventKind.PATCH, EventKind.LIFT_OFF)
+after_touch = _mark(EventKind.TOUCH_DOWN)
+grip = _mark(EventKind.GRIP)
+slip_onset = _mark(EventKind.SLIP_ONSET)
+rest = _mark(EventKind.REST)
+
+RULES = (
+    Rule(("before impact", "landing", "lands", "strikes", "first contact"), before_touch, "before touch"),
+    Rule(("after the impact", "after that impact", "after impact"), after_touch, "after touch"),
+    Rule(("centre above",), above_edge, "edge"),
+    Rule(("lift-off", "lift off", "contact lost", "flight starts", "leaves the wall"), lift_off, "lift-off"),
+    Rule(("slip speed passes through zero", "slip reverses"), _mark(EventKind.SLIP_REVERSAL), "reversal"),
+    Rule(("rolling starts", "grips"), grip, "grip"),
+    Rule(("slip starts", "slipping starts"), slip_onset, "onset"),
+    Rule(("stops for good", "comes to rest"), rest, "rest"),
+    Rule(("lowest point",), lowest_point, "lowest"),
+    Rule(("axial period",), axial_period, "period"),
+    Rule(("return",), full_return, "return"),
+    Rule(("top", "highest point"), highest_point, "highest"),
+)
+
+
+def own_moments(run: CaseRun) -> list[Moment | None]:
+    """Return the run's own moment of every event of its case, in their order.
+
+    None: the run has no such event. An event whose name is of no known kind is taken at its own time.
+    """
+    counts: dict[str, int] = {}
+    return [_own_moment(run, event.name.lower(), event.state.t, counts) for event in run.case.events]
+
+
+def rule_of(name: str) -> Rule | None:
+    """Return the rule that an event's name falls under."""
+    if NUMBERED.match(name):
+        return RULES[1]
+    return next((rule for rule in RULES if any(word in name for word in rule.words)), None)
+
+
+def _own_moment(run: CaseRun, name: str, t: float, counts: dict[str, int]) -> Moment | None:
+    rule = rule_of(name)
+    if rule is None:
+        row = run.at(t)
+        return None if row is None else moment_of_sample(row)
+    numbered = NUMBERED.match(name)
+    order = counts.get(rule.family, 0)
+    counts[rule.family] = order + 1
+    if numbered:
+        order = int(numbered.group(1)) - 1
+    elif name.split()[0] in ORDINALS and rule.family in ("lowest", "return", "highest"):
+        order = ORDINALS[name.split()[0]]
+    return rule.finder(run, order)

@@ -1,208 +1,282 @@
-"""Scalar results of a reference case, recomputed from its own run.
+"""Numbers of a case that are results of its own run, worked out from the run.
 
-A number that is a closed form without a run (an angle of repose, a limit speed) has no entry here and is reported as
-not run; such values belong to the tests of theory.
+What is not in `OWN` is a closed form without a run (an angle, a height, a limit of speed) and belongs in a test.
 """
 
 import math
 from collections.abc import Callable
-from typing import Any
 
 import numpy as np
-from numpy.typing import NDArray
 
+from engine.dynamics.state import ROLLING, SLIPPING
 from engine.integrate import log as columns
 from engine.integrate.result import EventKind
-from engine.reference.events import axial_period, turning_times
-from engine.reference.run import CaseRun
+from engine.reference import events
+from engine.reference.cases import Array
+from engine.reference.run import CaseRun, Moment
 
-Array = NDArray[np.float64]
-Number = Callable[[CaseRun, dict[str, Any]], float]
-STEP_READ = 0.02
-"""s. Longest step at which a reference read its extremes."""
-SPIN_LEFT = 0.01
-"""Share of the first spin above which its decay is read."""
+Number = Callable[[CaseRun], float | bool | None]
+"""A number of a run; nan: the run does not have it; None: it does not belong to this run."""
 
 
-def in_span(run: CaseRun, case: dict[str, Any]) -> Array:
-    """Return the rows up to the last sample of the case."""
-    last = float(case["samples"][-1]["t"]) if case.get("samples") else math.inf
-    return np.asarray(run.rows.samples[run.t <= last + 1e-12])
+def _time(moment: Moment | None) -> float:
+    return math.nan if moment is None else moment.t
 
 
-def extreme(t: Array, value: Array, highest: bool) -> float:
-    """Return the largest (or smallest) value, a parabola put through the best sample and its neighbours."""
-    i = int(np.argmax(value) if highest else np.argmin(value))
-    if i == 0 or i == len(t) - 1 or t[i - 1] >= t[i] or t[i] >= t[i + 1]:
-        return float(value[i])
-    a, b, c = np.polyfit(t[i - 1 : i + 2] - t[i], value[i - 1 : i + 2], 2)
-    if a == 0.0:
-        return float(value[i])
-    place = -b / (2.0 * a)
-    if not t[i - 1] - t[i] < place < t[i + 1] - t[i]:
-        return float(value[i])
-    return float(c - b * b / (4.0 * a))
+def _between(first: Moment | None, last: Moment | None) -> float:
+    """Distance between two moments, m."""
+    return math.nan if first is None or last is None else float(np.linalg.norm(last.x - first.x))
 
 
-def pressed(run: CaseRun, case: dict[str, Any]) -> Array:
-    """Return the rows up to the last sample in which the ball presses a wall."""
-    rows = in_span(run, case)
-    return np.asarray(rows[(rows[:, columns.PATCH] >= 0) & (rows[:, columns.FORCE] > 0.0)])
+def _start(run: CaseRun) -> Array:
+    return np.asarray(run.rows.samples[0])
 
 
-def normal_forces(run: CaseRun, case: dict[str, Any]) -> tuple[Array, Array]:
-    """Return times and N/m while on a wall."""
-    rows = pressed(run, case)
+def _least(t: Array, values: Array) -> float:
+    """Least of a series, by the parabola through the least sample and its neighbours where it lies between them."""
+    i = int(np.argmin(values))
+    if not 0 < i < len(values) - 1 or not t[i - 1] < t[i] < t[i + 1]:
+        return float(values[i])
+    a, b, c = np.polyfit(t[i - 1 : i + 2] - t[i], values[i - 1 : i + 2], 2)
+    between = a > 0.0 and t[i - 1] - t[i] < -0.5 * b / a < t[i + 1] - t[i]
+    return float(c - b * b / (4.0 * a)) if between else float(values[i])
+
+
+def pressing(run: CaseRun) -> tuple[Array, Array]:
+    """Times and normal force over mass, m/s2, while on a wall within the span."""
+    rows = run.span[run.span[:, columns.PATCH] >= 0.0]
     return rows[:, columns.T], rows[:, columns.FORCE]
 
 
-def friction_needs(run: CaseRun, case: dict[str, Any]) -> tuple[Array, Array]:
-    """Return times and the |F|/N that rolling needs."""
-    rows = pressed(run, case)
-    return rows[:, columns.T], rows[:, columns.NEED] / rows[:, columns.FORCE]
+def need_unmet(run: CaseRun) -> tuple[Array, Array]:
+    """Times and -|F|/N while rolling within the span: the least of it is the friction needed, with a minus."""
+    rows = run.span[run.span[:, columns.REGIME] == ROLLING]
+    return rows[:, columns.T], -rows[:, columns.NEED] / rows[:, columns.FORCE]
 
 
-def extreme_off(run: CaseRun, case: dict[str, Any], name: str, given: float) -> float:
-    """Return how far a given extreme is from what the run met, in the unit of the number.
-
-    The reference read its extremes at the steps of its own solution, up to STEP_READ apart: its value lies between the true
-    extreme and what is met STEP_READ beside it. (In an upright cylinder the closed form (2+k)/(1+k) g/(rho Omega^2) shows it:
-    case A1-01 gives 0.577885 where the closed form and this engine give 0.577892.)
-    """
-    reader, highest = EXTREMES[name]
-    t, value = reader(run, case)
-    sign = 1.0 if highest else -1.0
-    best = extreme(t, value, highest)
-    at = t[int(np.argmax(sign * value))]
-    least = min(float((sign * value)[(t >= at - STEP_READ) & (t <= at + STEP_READ)].min()), sign * best)
-    return max(0.0, sign * given - sign * best, least - sign * given)
+def least_force(run: CaseRun) -> float:
+    """Least normal force over mass, m/s2."""
+    return _least(*pressing(run))
 
 
-EXTREMES = {"min_N_per_m": (normal_forces, False), "mu_needed": (friction_needs, True)}
-"""Extremes over a run: how to read them, and whether the largest counts."""
+def friction_needed(run: CaseRun) -> float:
+    """Largest |F|/N while rolling."""
+    return -_least(*need_unmet(run))
 
 
-def azimuth_rate(run: CaseRun, case: dict[str, Any]) -> float:
-    """Mean rate round the z axis, rad/s."""
-    rows = in_span(run, case)
-    angle = np.unwrap(np.arctan2(rows[:, columns.Y + 1], rows[:, columns.Y]))
+EXTREMES: dict[str, tuple[Callable[[CaseRun], tuple[Array, Array]], float]] = {
+    "min_N_per_m": (pressing, 1.0),
+    "mu_needed": (need_unmet, -1.0),
+}
+"""Extremes over a run: the series whose least they are, and the sign that turns the number into it."""
+READ_APART = 0.02
+"""s. The cases read these extremes at the steps of their own solution, not at the extreme itself: in an upright cylinder
+A1-01 gives mu_needed 0.577885 where its closed form (2 + k)/(1 + k) g/(a theta'^2) and this engine give 0.577892. The
+given value is therefore met a little before and after the true extreme, by up to 8.6 ms in the open cases."""
+
+
+def extreme_off(run: CaseRun, name: str, given: float) -> float:
+    """How far from the run's extreme the given one is met, as a share of READ_APART; inf when it lies beyond the extreme."""
+    series, sign = EXTREMES[name]
+    t, values = series(run)
+    order = np.argsort(t, kind="stable")
+    t, values = t[order], values[order]
+    best, met = int(np.argmin(values)), np.flatnonzero(values >= sign * given)
+    if len(met) == 0 or values[best] > sign * given:
+        return math.inf
+    return float(np.abs(t[met] - t[best]).min()) / READ_APART
+
+
+def friction_limit(run: CaseRun) -> float:
+    """Largest friction over mass while slipping, m/s2."""
+    rows = run.span[run.span[:, columns.REGIME] == SLIPPING]
+    return float(rows[:, columns.FRICTION].max()) if len(rows) else math.nan
+
+
+def turning_rate(run: CaseRun) -> float:
+    """Mean rate of turning about the axis of the case's surface (z where it has none) over the span, rad/s."""
+    rows = run.span
+    surface = run.case.surfaces[0]
+    axis = surface.get("axis", np.array([0.0, 0.0, 1.0]))
+    off = rows[:, columns.Y : columns.Y + 3] - surface.get("point", np.zeros(3))
+    start = off[0] - (off[0] @ axis) * axis
+    angle = np.unwrap(np.arctan2(off @ np.cross(axis, start), off @ start))
     return float((angle[-1] - angle[0]) / (rows[-1, columns.T] - rows[0, columns.T]))
 
 
-def level(run: CaseRun, upward: bool) -> float:
-    """Height of the lowest (upward) or highest turning point, m."""
-    z = run.rows.samples[:, columns.Y + 2]
-    times = turning_times(run, upward)
-    if not times:
-        return float(z.min() if upward else z.max())
-    samples = run.rows.samples
-    i = int(np.searchsorted(run.t, times[0])) - 1
-    h, vz = times[0] - run.t[i], samples[i, columns.Y + 5]
-    turned = float(z[i] + 0.5 * h * vz)
-    if abs(vz) > 0.0:
-        az = -vz / h if h > 0.0 else 0.0
-        turned = float(z[i] + vz * h + 0.5 * az * h * h)
-    return min(turned, float(z.min())) if upward else max(turned, float(z.max()))
+def period(run: CaseRun) -> float:
+    """Time until the axial motion in a cylinder, else the whole motion, is back at its start, s."""
+    is_well = any(surface["type"] == "cylinder" for surface in run.case.surfaces)
+    return _time(events.axial_period(run) if is_well else events.full_return(run)) - float(_start(run)[columns.T])
 
 
-def mark_time(run: CaseRun, kind: EventKind, order: int = 0) -> float:
-    """Time of an event, s; nan when there is none."""
-    marks = run.marks(kind)
-    return float(marks[order, columns.MARK_T]) if len(marks) > order else math.nan
+def _height(run: CaseRun, find: Callable[[CaseRun, int], Moment | None], better: Callable[[float, float], float]) -> float:
+    """Extreme height of the centre, m: of the start and the first turning point of that sense."""
+    start, moment = float(_start(run)[columns.Y + 2]), find(run, 0)
+    if moment is None:
+        return start
+    return better(start, float(moment.x[2]))
 
 
-def distance_to(run: CaseRun, t: float) -> float:
-    """Straight distance from the start to where the ball is at the event at t, m."""
-    x = run.before(t)[columns.Y : columns.Y + 3]
-    return float(np.linalg.norm(x - run.rows.samples[0, columns.Y : columns.Y + 3]))
+def lowest(run: CaseRun) -> float:
+    """Lowest height of the centre, m."""
+    return _height(run, events.lowest_point, min)
 
 
-def normal_z(run: CaseRun, kind: EventKind) -> float:
-    """Vertical component of the normal where an event happens."""
-    t = mark_time(run, kind)
-    return float(run.before(t)[columns.NORMAL + 2]) if math.isfinite(t) else math.nan
+def highest(run: CaseRun) -> float:
+    """Highest height of the centre, m."""
+    return _height(run, events.highest_point, max)
 
 
-def touch(run: CaseRun) -> Array:
-    """Row before the first touch-down after the start."""
-    return run.before(mark_time(run, EventKind.TOUCH_DOWN))
+def _normal_height(run: CaseRun, kind: EventKind) -> float:
+    """Vertical part of the wall's normal just before the first event of a kind."""
+    mark = events.nth_mark(run, 0, kind)
+    return math.nan if mark is None else float(run.before(mark)[columns.NORMAL + 2])
 
 
-def top_row(run: CaseRun) -> Array:
-    """Sample nearest to the first highest point."""
-    times = turning_times(run, False)
-    return np.asarray(run.rows.samples[int(np.argmin(np.abs(run.t - times[0])))])
+def _angle(cosine: float) -> float:
+    return math.degrees(math.acos(cosine)) if abs(cosine) <= 1.0 else math.nan
 
 
-def speed(row: Array) -> float:
-    """|v| of a sample row, m/s."""
-    return float(np.linalg.norm(row[columns.Y + 3 : columns.Y + 6]))
+def touch_value(run: CaseRun, column: int) -> float:
+    """A column of the first touch-down's event row."""
+    mark = events.nth_mark(run, 0, EventKind.TOUCH_DOWN)
+    return math.nan if mark is None else float(mark[column])
 
 
-def spins(run: CaseRun) -> Array:
-    """Spin about the normal at every sample, rad/s."""
-    rows = run.rows.samples
-    w, n = rows[:, columns.Y + 6 : columns.Y + 9], rows[:, columns.NORMAL : columns.NORMAL + 3]
-    return np.asarray(np.einsum("ij,ij->i", w, n))
+def touch_place(run: CaseRun) -> float:
+    """x of the centre at the first touch-down, m."""
+    moment = events.before_touch(run)
+    return math.nan if moment is None else float(moment.x[0])
 
 
-def spin_decay(run: CaseRun) -> tuple[float, float]:
-    """Return (first spin, rate at which it is lost) from a straight line through the early decay."""
-    spin = np.abs(spins(run))
-    rows = spin > SPIN_LEFT * spin[0]
-    rate, first = np.polyfit(run.t[rows], spin[rows], 1)
-    return float(first), float(-rate)
+def drop_at_contact(run: CaseRun) -> float:
+    """Height lost between the near rim and the first touch-down, m."""
+    first, last = events.above_edge(run, 0), events.before_touch(run)
+    return math.nan if first is None or last is None else float(first.x[2] - last.x[2])
 
 
-def degrees(cosine: float) -> float:
-    """Angle of a cosine, degrees."""
-    return math.degrees(math.acos(cosine))
+def _speed(moment: Moment | None) -> float:
+    return math.nan if moment is None else float(np.linalg.norm(moment.v))
 
 
-NUMBERS: dict[str, Number] = {
-    "theta_rate": azimuth_rate,
-    "angular_rate": azimuth_rate,
-    "period": lambda run, case: _period(run, case),
-    "omega_z": lambda run, case: 2.0 * math.pi / axial_period(run),
-    "turns_per_oscillation": lambda run, case: azimuth_rate(run, case) * axial_period(run) / (2.0 * math.pi),
-    "z_lowest": lambda run, case: level(run, True),
-    "z_highest": lambda run, case: level(run, False),
-    "z_mean": lambda run, case: 0.5 * (level(run, True) + level(run, False)),
-    "z_amplitude": lambda run, case: 0.5 * (level(run, False) - level(run, True)),
-    "rho_centre": lambda run, case: float(np.hypot(*in_span(run, case)[:, columns.Y : columns.Y + 2].T).mean()),
-    "contact_lost_at": lambda run, case: mark_time(run, EventKind.LIFT_OFF),
-    "lift_off_time": lambda run, case: mark_time(run, EventKind.LIFT_OFF),
-    "slide_time": lambda run, case: mark_time(run, EventKind.GRIP),
-    "slide_distance": lambda run, case: distance_to(run, mark_time(run, EventKind.GRIP)),
-    "final_speed": lambda run, case: speed(in_span(run, case)[-1]),
-    "cos_lift_off": lambda run, case: normal_z(run, EventKind.LIFT_OFF),
-    "lift_off_angle_deg": lambda run, case: degrees(normal_z(run, EventKind.LIFT_OFF)),
-    "slip_start_angle_deg": lambda run, case: degrees(normal_z(run, EventKind.SLIP_ONSET)),
-    "cos_psi_top": lambda run, case: -normal_z(run, EventKind.LIFT_OFF),
-    "landing_time": lambda run, case: mark_time(run, EventKind.TOUCH_DOWN),
-    "landing_x": lambda run, case: float(touch(run)[columns.Y]),
-    "range": lambda run, case: float(touch(run)[columns.Y]),
-    "reimpact_time": lambda run, case: mark_time(run, EventKind.TOUCH_DOWN),
-    "reimpact_normal_speed": lambda run, case: float(run.marks(EventKind.TOUCH_DOWN)[0, columns.VALUE]),
-    "fall_time": lambda run, case: mark_time(run, EventKind.TOUCH_DOWN) - mark_time(run, EventKind.LIFT_OFF),
-    "time_on_edge": lambda run, case: mark_time(run, EventKind.LIFT_OFF) - mark_time(run, EventKind.PATCH),
-    "drop_at_contact": lambda run, case: float(case["start"]["x"][2]) - float(touch(run)[columns.Y + 2]),
-    "N_over_mg_at_top": lambda run, case: float(top_row(run)[columns.FORCE]) / 9.80665,
-    "speed_at_top": lambda run, case: speed(top_row(run)),
-    "time_to_top": lambda run, case: turning_times(run, False)[0],
-    "energy_lost_per_m": lambda run, case: float(run.marks(EventKind.TOUCH_DOWN)[0, columns.MARK_IMPACT]),
-    "stop_time": lambda run, case: mark_time(run, EventKind.REST),
-    "stop_distance": lambda run, case: distance_to(run, mark_time(run, EventKind.REST)),
-    "friction_limit_per_m": lambda run, case: float(case["contact"]["mu"]) * float(run.rows.samples[0, columns.FORCE]),
-    "spin_rate_loss": lambda run, case: spin_decay(run)[1],
-    "spin_stop_time": lambda run, case: spin_decay(run)[0] / spin_decay(run)[1],
+def top_force(run: CaseRun) -> float:
+    """Normal force over weight at the highest point."""
+    moment = events.highest_point(run)
+    if moment is None:
+        return math.nan
+    near = int(np.searchsorted(run.t, moment.t)) + np.array([-2, -1, 0, 1])
+    t, force = run.t[near], run.rows.samples[near, columns.FORCE]
+    return float(np.polyval(np.polyfit(t - moment.t, force, 3), 0.0)) / run.case.gravity
+
+
+def _gain_of_speed(run: CaseRun) -> float:
+    """Mean rate of speed between the start and the last sample that still moves, m/s2."""
+    moving = [sample.t for sample in run.case.samples if sample.mode != "rest"]
+    row = run.at(max(moving)) if moving else None
+    if row is None:
+        return math.nan
+    first = _start(run)
+    rise = np.linalg.norm(row[columns.Y + 3 : columns.Y + 6]) - np.linalg.norm(first[columns.Y + 3 : columns.Y + 6])
+    return float(rise / (row[columns.T] - first[columns.T]))
+
+
+def slowing(run: CaseRun) -> float | None:
+    """Deceleration of a ball that is slowed down, m/s2."""
+    rate = _gain_of_speed(run)
+    return None if rate > 0.0 else -rate
+
+
+def quickening(run: CaseRun) -> float | None:
+    """Acceleration of a ball that gains speed, m/s2."""
+    rate = _gain_of_speed(run)
+    return None if rate <= 0.0 else rate
+
+
+def _spin(rows: Array) -> Array:
+    """Spin about the wall's normal, rad/s."""
+    return np.asarray(np.einsum("ij,ij->i", rows[:, columns.Y + 6 : columns.Y + 9], rows[:, columns.NORMAL : columns.NORMAL + 3]))
+
+
+def _spinning(run: CaseRun) -> tuple[Array, Array]:
+    """Times and sizes of the spin about the normal while it is more than 2 % of that at the start."""
+    spin = np.abs(_spin(run.rows.samples))
+    end = int(np.argmax(spin < 0.02 * spin[0])) if (spin < 0.02 * spin[0]).any() else len(spin)
+    return run.t[:end], spin[:end]
+
+
+def spin_loss(run: CaseRun) -> float:
+    """Mean rate at which the spin about the normal is lost, rad/s2."""
+    t, spin = _spinning(run)
+    return float((spin[0] - spin[-1]) / (t[-1] - t[0]))
+
+
+def spin_stop(run: CaseRun) -> float:
+    """Time at which the spin about the normal ends, s: its line carried on to zero, if the run really has none after it."""
+    t, spin = _spinning(run)
+    slope, level = np.polyfit(t, spin, 1)
+    stop = -level / slope
+    later = np.abs(_spin(run.rows.samples[run.t > stop * (1.0 + 1e-5)]))
+    return float(stop) if len(later) and later.max() < 1e-5 * spin[0] else math.nan
+
+
+OWN: dict[str, Number] = {
+    "min_N_per_m": least_force,
+    "mu_needed": friction_needed,
+    "friction_limit_per_m": friction_limit,
+    "theta_rate": turning_rate,
+    "angular_rate": turning_rate,
+    "period": period,
+    "omega_z": lambda run: 2.0 * math.pi / period(run),
+    "turns_per_oscillation": lambda run: abs(turning_rate(run)) * period(run) / (2.0 * math.pi),
+    "z_lowest": lowest,
+    "z_highest": highest,
+    "z_mean": lambda run: 0.5 * (highest(run) + lowest(run)),
+    "z_amplitude": lambda run: 0.5 * (highest(run) - lowest(run)),
+    "contact_lost_at": lambda run: _time(events.lift_off(run, 0)),
+    "lift_off_time": lambda run: _time(events.lift_off(run, 0)),
+    "cos_lift_off": lambda run: _normal_height(run, EventKind.LIFT_OFF),
+    "lift_off_angle_deg": lambda run: _angle(_normal_height(run, EventKind.LIFT_OFF)),
+    "slip_start_angle_deg": lambda run: _angle(_normal_height(run, EventKind.SLIP_ONSET)),
+    "cos_psi_top": lambda run: -_normal_height(run, EventKind.LIFT_OFF),
+    "landing_time": lambda run: touch_value(run, columns.MARK_T),
+    "reimpact_time": lambda run: touch_value(run, columns.MARK_T),
+    "reimpact_normal_speed": lambda run: touch_value(run, columns.VALUE),
+    "energy_lost_per_m": lambda run: touch_value(run, columns.MARK_IMPACT),
+    "landing_x": touch_place,
+    "range": lambda run: touch_place(run) - float(getattr(events.lift_off(run, 0), "x", np.full(3, math.nan))[0]),
+    "fall_time": lambda run: touch_value(run, columns.MARK_T) - _time(events.lift_off(run, 0)),
+    "time_on_edge": lambda run: _time(events.lift_off(run, 0)) - _time(events.above_edge(run, 0)),
+    "drop_at_contact": drop_at_contact,
+    "captured_by_drop_criterion": lambda run: drop_at_contact(run) >= run.ball.radius,
+    "time_to_top": lambda run: _time(events.highest_point(run)),
+    "speed_at_top": lambda run: _speed(events.highest_point(run)),
+    "N_over_mg_at_top": top_force,
+    "slide_time": lambda run: _time(events.grip(run, 0)),
+    "slide_distance": lambda run: _between(_first(run), events.grip(run, 0)),
+    "final_speed": lambda run: _speed(events.grip(run, 0)),
+    "decel": slowing,
+    "accel_downhill": quickening,
+    "stop_time": lambda run: _time(events.rest(run, 0)),
+    "stop_distance": lambda run: _between(_first(run), events.rest(run, 0)),
+    "spin_rate_loss": spin_loss,
+    "spin_stop_time": spin_stop,
 }
-"""Name of a number to its value in a run."""
+"""How each number of a run is worked out, by the name that the cases give it."""
+HINGED_ON_EDGE = ("captured_by_drop_criterion", "drop_at_contact")
+"""Numbers that a knife-edge case leaves open."""
 
 
-def _period(run: CaseRun, case: dict[str, Any]) -> float:
-    """Period of a swing in a bowl (two returns) or of the bobbing in a cylinder, s."""
-    if str(case["kind"]).startswith("A5"):
-        times = turning_times(run, False)
-        return times[1] if len(times) > 1 else 2.0 * times[0]
-    return axial_period(run)
+def _first(run: CaseRun) -> Moment:
+    y = _start(run)[columns.Y : columns.Y + 9]
+    return Moment(float(_start(run)[columns.T]), y[0:3], y[3:6], y[6:9])
+
+
+def own_number(run: CaseRun, name: str, given: object) -> float | bool | None:
+    """Return a number of the run by its name; None where it is a closed form without a run, or no single number."""
+    find = OWN.get(name)
+    if find is None or not isinstance(given, bool | int | float):
+        return None
+    if run.case.is_knife_edge and name in HINGED_ON_EDGE:
+        return None
+    return find(run)

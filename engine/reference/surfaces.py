@@ -5,180 +5,174 @@ given in words; here they become bounds and links. A hole has one rim, a sharp c
 """
 
 import math
-from dataclasses import dataclass
-from typing import Any
+import re
+from collections.abc import Sequence
 
 import numpy as np
-from numpy.typing import NDArray
 
-from engine.contact.patches import END, HOLE, U_MAX, Law, PatchList, Rectangle, Revolution, Tag
+from engine.contact.patches import END, HOLE, START, U_MAX, U_MIN, Law, PatchList, Rectangle, Revolution, Tag
 from engine.contact.surface import Scene
-from engine.errors import CasesFileError
 from engine.geometry import primitives, profiles
 from engine.geometry.pose import pose_at
+from engine.reference.cases import Array, Case, Contact, Record
 
-Array = NDArray[np.float64]
 LONG = 100.0
 """m. Half length of cylinders and edges that are meant to be endless."""
 NO_SLIP = 1e9
 """Friction that is never used up."""
-TURNS_BEFORE, TURNS_AFTER = 2.0, 60.0
-"""Turns of a helical tube before and after the place q = 0 of the case."""
-RHO_LEAST, RHO_MOST = 0.004, 4.0
-"""m. Range of the hyperbolic funnel, which has no end of its own."""
+TURNS_BEFORE, LEAST_TURNS = 2.0, 20.0
+"""Turns of a helical tube before the place q = 0 of the case, and how many it has after it at least."""
+FUNNEL_LEAST, FUNNEL_MOST = 0.04, 40.0
+"""Range of the hyperbolic funnel, which has no end of its own, in units of sqrt(c)."""
+BOWL_MOST = 40.0
+"""Radius up to which the paraboloid reaches, in focal lengths: there it is 400 of them high."""
+EXTENT = re.compile(r"([xyz])\s*(<=|>=)\s*([-+0-9.eE]+)")
+UP = np.array([0.0, 0.0, 1.0])
 
 
-@dataclass(frozen=True)
-class Setting:
-    """Scene of a case and the friction it was set up with."""
-
-    scene: Scene
-
-
-def law_of(contact: dict[str, Any], radius: float) -> Law:
-    """Return the contact law of a case."""
-    name = contact.get("law", "no_slip")
-    mu = {"no_slip": NO_SLIP, "frictionless": 0.0, "none": 0.0}.get(name, contact.get("mu"))
-    if not isinstance(mu, int | float):
-        mu = 0.0
+def law_of(contact: Contact, radius: float, mu: float | None = None) -> Law:
+    """Return the contact law of a case; `mu` overrides the friction (rows of a map)."""
+    friction = {"no_slip": NO_SLIP, "coulomb": contact.mu}.get(contact.law, 0.0) if mu is None else mu
     return Law(
-        static_friction=float(mu),
-        kinetic_friction=float(mu),
-        rolling_loss=float(contact.get("rolling_b", 0.0)) / radius,
-        loss_speed=math.inf,
-        restitution=float(contact.get("restitution", 0.5)),
-        spin_arm=float(contact.get("drilling_c", 0.0)),
-        contact_modulus=0.0,
+        static_friction=friction,
+        kinetic_friction=friction,
+        rolling_loss=contact.rolling / radius,
+        restitution=contact.restitution,
+        spin_arm=contact.drilling,
     )
 
 
-def scene_of(case: dict[str, Any], mu: float | None = None) -> Scene:
-    """Return the scene of a case; `mu` overrides the friction (rows of a map).
+def scene_of(case: Case, radius: float, fall: float, mu: float | None = None) -> Scene:
+    """Return the scene of a case.
 
-    Raises
-    ------
-    CasesFileError
-        When a surface is of an unknown type.
+    Parameters
+    ----------
+    case : Case
+    radius : float
+        Of the ball, m.
+    fall : float
+        Length of path to provide for, m.
+    mu : float, optional
+        Friction that replaces the case's own.
     """
-    contact = dict(case.get("contact") or {})
-    if mu is not None:
-        contact.update(law="coulomb", mu=mu)
-    tag = Tag(law_of(contact, float(case["ball"]["r"])))
-    surfaces = case.get("surfaces") or []
+    tag = Tag(law_of(case.contact, radius, mu))
+    hole = _hole(case.surfaces)
     patches = PatchList()
-    holes = _holes(surfaces)
-    edges: list[int] = []
-    planes: list[int] = []
-    for surface in surfaces:
-        kind = surface["type"]
-        if kind == "plane":
-            planes.append(_plane(patches, surface, holes, tag))
-        elif kind == "edge" and not holes:
-            edges.append(_edge(patches, surface, tag))
-        elif kind == "cylinder" and "quarter" in surface.get("extent", ""):
-            edges.append(_edge(patches, dict(surface, direction=surface["axis"]), tag, float(surface["radius"])))
-        elif kind != "edge":
-            _add(patches, surface, tag)
-    for hole in holes:
-        _rim(patches, hole, surfaces, tag)
-    for plane in planes[: len(edges)]:
-        patches.set_link(plane, U_MAX, edges[0])
-    drag = contact.get("drag") or {}
-    return patches.to_scene(air=(float(drag.get("rho", 0.0)), 1.8e-5))
+    added = [(surface, _add(patches, surface, hole, tag, fall)) for surface in case.surfaces]
+    bounded = [index for surface, index in added if surface["type"] == "plane" and surface.get("extent")]
+    if hole is not None:
+        _add_rim(patches, hole, tag)
+        rim = len(patches) - 1
+        patches.set_link(next(i for s, i in added if s is hole), END if _is_topped(hole) else START, rim)
+        for plane in bounded:
+            patches.set_link(plane, HOLE, rim)
+    for edge in [index for surface, index in added if index >= 0 and _is_edge(surface)]:
+        for plane in bounded:
+            patches.set_link(plane, U_MAX, edge)
+            patches.set_link(plane, U_MIN, edge)
+    return patches.to_scene((0.0, 0.0, -case.gravity), (case.contact.air, 1.8e-5))
 
 
-def _holes(surfaces: list[dict[str, Any]]) -> list[dict[str, Any]]:
-    """Return the cylinders that make a hole in a plane."""
-    pierced = any("hole" in surface.get("extent", "") for surface in surfaces)
-    return [s for s in surfaces if pierced and s["type"] == "cylinder" and s.get("side") == "inside"]
+def _is_edge(surface: Record) -> bool:
+    """Whether a surface is the edge of a bounded plane, sharp or round."""
+    return surface["type"] == "edge" or (surface["type"] == "cylinder" and "quarter" in surface.get("extent", ""))
 
 
-def _plane(patches: PatchList, surface: dict[str, Any], holes: list[dict[str, Any]], tag: Tag) -> int:
-    """Add a plane: u along world x as far as the plane allows, so that "x <= a" is a bound of u."""
-    point, normal = _vector(surface["point"]), _unit(surface["normal"])
-    u = np.array([1.0, 0.0, 0.0]) - normal[0] * normal
-    u = np.array([0.0, 1.0, 0.0]) if np.linalg.norm(u) < 1e-9 else u / np.linalg.norm(u)
-    extent = surface.get("extent", "")
-    bounds, hole = [-math.inf, math.inf, -math.inf, math.inf], 0.0
-    if extent.startswith("x <="):
-        bounds[1] = (float(extent.split()[2]) - point[0]) / u[0]
-    if "hole" in extent:
-        axis, centre = _unit(holes[0]["axis"]), _vector(holes[0]["point"])
-        point = centre + axis * float((point - centre) @ normal) / float(axis @ normal)
-        hole = float(holes[0]["radius"])
-    low, high, near, far = bounds
-    return patches.add_plane(Rectangle(point, u, np.cross(normal, u), (low, high, near, far), hole), tag)
+def _hole(surfaces: Sequence[Record]) -> Record | None:
+    """Return the cylinder that makes a hole in a plane."""
+    if not any("hole" in surface.get("extent", "") for surface in surfaces):
+        return None
+    inside = [s for s in surfaces if s["type"] == "cylinder" and s.get("side", "inside") == "inside"]
+    return inside[0] if inside else None
 
 
-def _edge(patches: PatchList, surface: dict[str, Any], tag: Tag, radius: float = 0.0) -> int:
-    """Add an edge: a straight rod of this radius (0: sharp), LONG to either side."""
-    point, way = _vector(surface["point"]), _unit(surface["direction"])
-    return patches.add_swept_outside(primitives.straight_between(point - LONG * way, point + LONG * way), radius, tag=tag)
-
-
-def _rim(patches: PatchList, hole: dict[str, Any], surfaces: list[dict[str, Any]], tag: Tag) -> None:
-    """Add the rim of a hole and link plane and cylinder to it (the plane is patch order, the cylinder found by kind)."""
-    centre, axis = _vector(hole["point"]), _unit(hole["axis"])
-    rim = patches.add_swept_outside(primitives.circle(centre, axis, float(hole["radius"])), 0.0, closed=True, tag=tag)
-    index = 0
-    for surface in surfaces:
-        if surface["type"] == "edge":
-            continue
-        if surface["type"] == "plane" and "hole" in surface.get("extent", ""):
-            patches.set_link(index, HOLE, rim)
-        if surface is hole:
-            patches.set_link(index, END, rim)
-        index += 1
-
-
-def _add(patches: PatchList, surface: dict[str, Any], tag: Tag) -> int:
-    """Add a surface of revolution or a tube."""
+def _add(patches: PatchList, surface: Record, hole: Record | None, tag: Tag, fall: float) -> int:
+    """Add one surface; -1 for an edge that is the rim of a hole, which is added with the hole."""
     kind = surface["type"]
+    if kind == "plane":
+        return patches.add_plane(_plane(surface, hole), tag)
+    if kind == "edge":
+        return -1 if hole else _add_rod(patches, surface["point"], surface["direction"], 0.0, tag)
+    if _is_edge(surface):
+        return _add_rod(patches, surface["point"], surface["axis"], surface["radius"], tag)
     if kind == "torus":
-        ring = primitives.circle(_vector(surface["centre"]), _unit(surface["axis"]), float(surface["bend_radius"]))
-        return patches.add_swept_inside(ring, float(surface["tube_radius"]), closed=True, tag=tag)
+        ring = primitives.circle(surface["centre"], surface["axis"], surface["bend_radius"])
+        return patches.add_swept_inside(ring, surface["tube_radius"], closed=True, tag=tag)
     if kind == "helical_tube":
-        return patches.add_swept_inside(_helix(surface), float(surface["tube_radius"]), tag=tag)
+        return patches.add_swept_inside(_helix(surface, fall), surface["tube_radius"], tag=tag)
     return patches.add_revolved(_revolution(surface), tag)
 
 
-def _helix(surface: dict[str, Any]) -> Array:
+def _add_rod(patches: PatchList, point: Array, way: Array, radius: float, tag: Tag) -> int:
+    """Add a straight rod of this radius (0: sharp edge), LONG to either side."""
+    return patches.add_swept_outside(primitives.straight_between(point - LONG * way, point + LONG * way), radius, tag=tag)
+
+
+def _add_rim(patches: PatchList, hole: Record, tag: Tag) -> None:
+    """Add the rim of a hole: a sharp circle where its cylinder ends."""
+    centre = hole["point"] + _end_height(hole) * hole["axis"]
+    patches.add_swept_outside(primitives.circle(centre, hole["axis"], hole["radius"]), 0.0, closed=True, tag=tag)
+
+
+def _plane(surface: Record, hole: Record | None) -> Rectangle:
+    """Return a plane whose u runs along the world axis of its bound ("x <= 0"), else along x where it can."""
+    point, normal, extent = surface["point"], surface["normal"], surface.get("extent", "")
+    bound = EXTENT.search(extent)
+    axis = "xyz".index(bound.group(1)) if bound else int(abs(normal[0]) > 0.999)
+    u = np.eye(3)[axis] - normal[axis] * normal
+    u = u / math.sqrt(u @ u)
+    low, high, radius = -math.inf, math.inf, 0.0
+    if bound:
+        place = (float(bound.group(3)) - point[axis]) / u[axis]
+        low, high = (low, place) if bound.group(2) == "<=" else (place, high)
+    if "hole" in extent and hole is not None:
+        point = hole["point"] + hole["axis"] * float((point - hole["point"]) @ normal) / float(hole["axis"] @ normal)
+        radius = hole["radius"]
+    return Rectangle(point, u, np.cross(normal, u), (low, high, -math.inf, math.inf), radius)
+
+
+def _end_height(cylinder: Record) -> float:
+    """Return the height along its axis at which a cylinder ends ("z <= 0"), +-LONG where it does not."""
+    bound = EXTENT.search(cylinder.get("extent", ""))
+    if not bound:
+        return LONG
+    axis = "xyz".index(bound.group(1))
+    return float((float(bound.group(3)) - cylinder["point"][axis]) / cylinder["axis"][axis])
+
+
+def _is_topped(cylinder: Record) -> bool:
+    """Whether a bound of a cylinder lies at its end, seen along its axis, rather than at its start."""
+    bound = EXTENT.search(cylinder.get("extent", ""))
+    if not bound:
+        return True
+    return bool((bound.group(2) == "<=") == (cylinder["axis"]["xyz".index(bound.group(1))] > 0.0))
+
+
+def _helix(surface: Record, fall: float) -> Array:
     """Return the centreline C(q) = (R cos q, hand R sin q, -pitch q/2pi), begun TURNS_BEFORE turns before q = 0."""
-    radius, pitch, hand = (float(surface[key]) for key in ("helix_radius", "pitch", "hand"))
-    total = TURNS_BEFORE + TURNS_AFTER
+    radius, pitch, hand = surface["helix_radius"], surface["pitch"], math.copysign(1.0, surface["hand"])
+    turn = math.hypot(2.0 * math.pi * radius, pitch)
+    total = TURNS_BEFORE + max(LEAST_TURNS, math.ceil(fall / turn))
     start = pose_at((radius, 0.0, TURNS_BEFORE * pitch), hand * 0.5 * math.pi, pitch / (2.0 * math.pi * radius))
     return primitives.helix(start, radius, hand * total, pitch * total)
 
 
-def _revolution(surface: dict[str, Any]) -> Revolution:
+def _revolution(surface: Record) -> Revolution:
     """Return the meridian, origin, axis and side of a surface of revolution."""
     kind = surface["type"]
-    origin, axis, side = np.zeros(3), np.array([0.0, 0.0, 1.0]), 1
+    side = -1 if surface.get("side") == "outside" else 1
     if kind == "cylinder":
-        origin, axis = _vector(surface["point"]), _unit(surface["axis"])
-        top = 0.0 if surface.get("extent", "").startswith("z <=") else LONG
-        radius = float(surface["radius"])
-        side = 1 if surface.get("side", "inside") == "inside" else -1
-        return Revolution(profiles.line((radius, -LONG), (radius, top)), origin, axis, side)
+        end, radius = _end_height(surface), surface["radius"]
+        low, high = (-LONG, end) if _is_topped(surface) else (end, LONG)
+        return Revolution(profiles.line((radius, low), (radius, high)), surface["point"], surface["axis"], side)
     if kind == "sphere":
-        side = 1 if surface.get("side", "inside") == "inside" else -1
-        table = profiles.arc((0.0, 0.0), float(surface["radius"]), (-0.5 * math.pi, 0.5 * math.pi))
-        return Revolution(table, _vector(surface["centre"]), axis, side)
+        table = profiles.arc((0.0, 0.0), surface["radius"], (-0.5 * math.pi, 0.5 * math.pi))
+        return Revolution(table, surface["centre"], UP, side)
     if kind == "cone":
-        slope = 1.0 / math.tan(float(surface["half_angle"]))
-        return Revolution(profiles.line((0.0, 0.0), (20.0, 20.0 * slope)), origin, axis, side)
-    if kind == "paraboloid":
-        return Revolution(profiles.parabola((0.0, 4.0), 0.5 / float(surface["focal_length"])), origin, axis, side)
-    if kind == "hyperbolic_funnel":
-        return Revolution(profiles.hyperbola((RHO_LEAST, RHO_MOST), float(surface["c"])), origin, axis, side)
-    raise CasesFileError(f'Surface type "{kind}" is not known; give plane, cylinder, sphere, torus, helical_tube, cone, '
-                         "paraboloid, hyperbolic_funnel or edge.")
-
-
-def _vector(values: Any) -> Array:
-    return np.array(values, dtype=np.float64)
-
-
-def _unit(values: Any) -> Array:
-    vector = _vector(values)
-    return vector / float(np.linalg.norm(vector))
+        table = profiles.line((0.0, 0.0), (LONG, LONG / math.tan(surface["half_angle"])))
+    elif kind == "paraboloid":
+        table = profiles.parabola((0.0, BOWL_MOST * surface["focal_length"]), 0.5 / surface["focal_length"])
+    else:
+        scale = math.sqrt(surface["c"])
+        table = profiles.hyperbola((FUNNEL_LEAST * scale, FUNNEL_MOST * scale), surface["c"])
+    return Revolution(table, np.zeros(3), UP, side)
