@@ -1,23 +1,20 @@
 """Reference cases as read from a file: checked, typed, every problem a sentence.
 
-The schema stands in the file's own `about` block: ball, surfaces, contact, start, samples, events, numbers, in SI units.
+The schema stands in the file's own `about` block: ball, surfaces, contact, start, samples, events, numbers; SI units.
 """
 
 import json
 import math
 from collections.abc import Iterator
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
 
 import numpy as np
-from numpy.typing import NDArray
 
 from engine.constants import STANDARD_GRAVITY
-from engine.errors import CasesFileError, os_reason, suggestion
-
-Array = NDArray[np.float64]
-Record = dict[str, Any]
+from engine.errors import CasesFileError, os_reason
+from engine.reference.reader import Array, Reader, Record, is_number
 
 SURFACES = {
     "plane": ("point", "normal"),
@@ -53,16 +50,17 @@ class State:
 
 @dataclass(frozen=True)
 class Named:
-    """A named event: its state, and the velocity just before it where given (m/s)."""
+    """A named event: its state, the velocity just before it where given (m/s), and which wall it is on."""
 
     name: str
     state: State
     v_before: Array | None
+    where: str
 
 
 @dataclass(frozen=True)
 class Contact:
-    """Contact law: `mu` -1 for a map's rows, `rolling` b m, `drilling` c m, drag coefficient, air kg/m3, drag area m2."""
+    """Contact law: friction, `rolling` b m, `drilling` c m, restitution, drag coefficient, air kg/m3, drag area m2."""
 
     law: str = "no_slip"
     mu: float = 0.0
@@ -95,61 +93,7 @@ class Case:
     @property
     def is_knife_edge(self) -> bool:
         """Whether the case says of itself that its time counts and not its outcome."""
-        return "knife edge" in self.note.lower()
-
-
-@dataclass
-class Reader:
-    """Takes fields out of records and gathers a sentence for everything that is wrong."""
-
-    problems: list[str] = field(default_factory=list)
-
-    def number(self, record: Record, key: str, where: str, default: float | None = None) -> float:
-        """Return a number of a record; nan and a sentence when it is missing or none."""
-        value = record.get(key, default)
-        if isinstance(value, int | float) and not isinstance(value, bool):
-            return float(value)
-        self.problems.append(f'{where}: "{key}" must be a number; {_given(value)}.')
-        return math.nan
-
-    def positive(self, record: Record, key: str, where: str) -> float:
-        """Return a number above zero."""
-        value = self.number(record, key, where)
-        if value <= 0.0:
-            self.problems.append(f'{where}: "{key}" must be above 0; {value:g} was given.')
-        return value
-
-    def vector(self, record: Record, key: str, where: str) -> Array | None:
-        """Return three numbers, None where the key is not there."""
-        value = record.get(key)
-        if value is None:
-            return None
-        if isinstance(value, list) and len(value) == 3 and all(_is_number(part) for part in value):
-            return np.array(value, dtype=np.float64)
-        self.problems.append(f'{where}: "{key}" must be three numbers; {_given(value)}.')
-        return None
-
-    def choice(self, value: Any, allowed: tuple[str, ...], what: str, where: str) -> str:
-        """Return a word of a known list."""
-        if value not in allowed:
-            self.problems.append(f'{where}: there is no {what} "{value}"{suggestion(str(value), allowed)}.')
-        return str(value)
-
-    def records(self, record: Record, key: str, where: str) -> list[Record]:
-        """Return a list of objects; a missing or null one is empty."""
-        value = record.get(key) or []
-        if isinstance(value, list) and all(isinstance(part, dict) for part in value):
-            return value
-        self.problems.append(f'{where}: "{key}" must be a list of objects.')
-        return []
-
-    def part(self, record: Record, key: str, where: str) -> Record:
-        """Return an object; a missing or null one is empty."""
-        value = record.get(key) or {}
-        if isinstance(value, dict):
-            return value
-        self.problems.append(f'{where}: "{key}" must be an object.')
-        return {}
+        return "knife edge" in self.note.lower() or any("(limit)" in event.where for event in self.events)
 
 
 def read_cases(path: Path | str) -> list[Case]:
@@ -187,7 +131,7 @@ def _content(path: Path) -> Record:
         place = f"line {error.lineno}, column {error.colno}"
         raise CasesFileError(f"{path} cannot be used: it is not JSON ({error.msg} at {place}).") from error
     except (RecursionError, ValueError) as error:
-        raise CasesFileError(f"{path} cannot be used: its JSON is nested too deep or holds too long a number.") from error
+        raise CasesFileError(f"{path} cannot be used: its JSON is too deep or holds too long a number.") from error
     if not isinstance(content, dict):
         raise CasesFileError(f'{path} cannot be used: it must be an object with a list "cases".')
     return content
@@ -206,14 +150,6 @@ def _not_finite(value: Any, where: str) -> Iterator[str]:
             yield from _not_finite(part, f"{where}[{name}]")
 
 
-def _is_number(value: Any) -> bool:
-    return isinstance(value, int | float) and not isinstance(value, bool)
-
-
-def _given(value: Any) -> str:
-    return "it is missing" if value is None else f"{json.dumps(value)[:40]} was given"
-
-
 def _case(reader: Reader, record: Any, index: int, gravity: float) -> Case:
     if not isinstance(record, dict):
         reader.problems.append(f"Case {index + 1} must be an object.")
@@ -226,9 +162,8 @@ def _case(reader: Reader, record: Any, index: int, gravity: float) -> Case:
     has_run = bool(start) and not rows
     ball = _ball(reader, record, where) if start else None
     surfaces = tuple(_surface(reader, entry, where) for entry in reader.records(record, "surfaces", where))
-    _check_rows(reader, rows, surfaces, numbers, where)
     samples = reader.records(record, "samples", where)
-    return Case(
+    case = Case(
         name=name,
         kind=str(record.get("kind", "")),
         note=str(record.get("note", "")),
@@ -243,6 +178,8 @@ def _case(reader: Reader, record: Any, index: int, gravity: float) -> Case:
         gain=_gain(reader.part(record, "sensitivity", where)),
         gravity=gravity,
     )
+    _check_rows(reader, case, where)
+    return case
 
 
 def _ball(reader: Reader, record: Record, where: str) -> tuple[float, float, float]:
@@ -258,7 +195,7 @@ def _surface(reader: Reader, record: Record, where: str) -> Record:
     kind = reader.choice(record.get("type"), tuple(SURFACES), "type of surface", where)
     where = f'{where}, surface "{kind}"'
     surface = dict(record)
-    if kind == "cone" and "half_angle" not in surface and _is_number(surface.get("half_angle_deg")):
+    if kind == "cone" and "half_angle" not in surface and is_number(surface.get("half_angle_deg")):
         surface["half_angle"] = math.radians(surface["half_angle_deg"])
     if "side" in surface:
         reader.choice(surface["side"], ("inside", "outside"), "side", where)
@@ -326,7 +263,8 @@ def _named(reader: Reader, record: Record, where: str) -> Named:
     if not isinstance(name, str) or not name:
         reader.problems.append(f'{where}: an event has no "name"; give one.')
     where = f'{where}, event "{name}"'
-    return Named(str(name), _state(reader, record, where), reader.vector(record, "v_before", where))
+    before = reader.vector(record, "v_before", where)
+    return Named(str(name), _state(reader, record, where), before, str(record.get("where", "")))
 
 
 def _gain(record: Record) -> tuple[Array, Array] | None:
@@ -334,20 +272,20 @@ def _gain(record: Record) -> tuple[Array, Array] | None:
     times, gains = record.get("t"), record.get("gain")
     if not isinstance(times, list) or not isinstance(gains, list) or len(times) != len(gains) or not times:
         return None
-    pairs = [(t, gain) for t, gain in zip(times, gains, strict=True) if _is_number(t) and _is_number(gain)]
+    pairs = [(t, gain) for t, gain in zip(times, gains, strict=True) if is_number(t) and is_number(gain)]
     table = np.array(sorted(pairs), dtype=np.float64).reshape(-1, 2)
     return (table[:, 0], table[:, 1]) if len(table) else None
 
 
-def _check_rows(reader: Reader, rows: tuple[Record, ...], surfaces: tuple[Record, ...], numbers: Record, where: str) -> None:
+def _check_rows(reader: Reader, case: Case, where: str) -> None:
     """Gather what is wrong with the rows of a map."""
-    if not rows:
+    if not case.rows:
         return
-    if not any(surface.get("type") == "cylinder" for surface in surfaces):
+    if not any(surface.get("type") == "cylinder" for surface in case.surfaces):
         reader.problems.append(f"{where}: a map needs a cylinder to roll in.")
     for key in ("drop_depth", "t_max"):
-        reader.positive(numbers, key, where)
-    for index, row in enumerate(rows):
+        reader.positive(case.numbers, key, where)
+    for index, row in enumerate(case.rows):
         for key in ROW_KEYS[:3]:
             reader.number(row, key, f"{where}, row {index + 1}")
         reader.choice(row.get("outcome"), ("exit", "drop", "stays"), "outcome", f"{where}, row {index + 1}")

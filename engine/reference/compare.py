@@ -12,9 +12,10 @@ import numpy as np
 from engine.errors import TrundleError
 from engine.integrate import log as columns
 from engine.integrate.result import STATUS_SENTENCES, Status
-from engine.reference.cases import Array, Case, Named, Record, State
+from engine.reference.cases import Case, Named, State
 from engine.reference.events import own_moments, rule_of
 from engine.reference.numbers import EXTREMES, extreme_off, own_number
+from engine.reference.reader import Record
 from engine.reference.run import MODES, CaseRun, Moment, moment_of_sample, run_case, run_row
 
 POSITION, VELOCITY, EVENT_TIME, ROW_TIME, NUMBER = 1e-6, 1e-5, 1e-6, 1e-5, 1e-5
@@ -103,10 +104,14 @@ def _compare_run(run: CaseRun, result: CaseResult) -> None:
 
 
 def _errors(own: Moment, given: State, limits: Limits) -> dict[str, float]:
-    """Largest component of every error over its limit."""
+    """Return every error over its limit."""
     gain = limits.gain(given.t)
-    pairs: tuple[tuple[str, Array, Array | None], ...] = (("x", own.x, given.x), ("v", own.v, given.v), ("w", own.w, given.w))
-    return {k: float(np.linalg.norm(mine - other)) / (gain * limits.of(k)) for k, mine, other in pairs if other is not None}
+    pairs = {"x": (own.x, given.x), "v": (own.v, given.v), "w": (own.w, given.w)}
+    return {
+        kind: float(np.linalg.norm(mine - other)) / (gain * limits.of(kind))
+        for kind, (mine, other) in pairs.items()
+        if other is not None
+    }
 
 
 def _compare_sample(run: CaseRun, sample: State, limits: Limits, result: CaseResult) -> None:

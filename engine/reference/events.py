@@ -1,6 +1,6 @@
 """Named events of a case found in its own run, by kind and order, never by the time that the case gives.
 
-The n-th event of a name goes with the n-th mark of its kind; lowest points, tops and returns are crossings of a velocity.
+The n-th event of a name goes with the n-th mark of its kind; lowest points, tops and returns by a velocity.
 """
 
 import re
@@ -11,7 +11,7 @@ import numpy as np
 
 from engine.integrate import log as columns
 from engine.integrate.result import EventKind
-from engine.reference.cases import Array
+from engine.reference.reader import Array
 from engine.reference.run import CaseRun, Moment, moment_of_mark, moment_of_sample
 
 Finder = Callable[[CaseRun, int], Moment | None]
@@ -60,9 +60,10 @@ def highest_point(run: CaseRun, index: int = 0) -> Moment | None:
 
 
 def _return_along(run: CaseRun, way: Array, index: int) -> Moment | None:
-    """Return when the motion along a unit vector (3,) is back at its start: f = (x - x0) v0 + (v - v0) a0/nu^2 rises through 0.
+    """Return when the motion along a unit vector (3,) is back at its start.
 
-    On a closed orbit this holds exactly after every period, whatever the scale nu; half way round f falls.
+    f = (x - x0) v0 + (v - v0) a0/nu^2 rises through 0. On a closed orbit this holds exactly after every period, whatever
+    the scale nu; half way round f falls.
     """
     rows = run.rows.samples
     y0 = rows[0, columns.Y : columns.Y + 6]
@@ -85,7 +86,7 @@ def axial_period(run: CaseRun, index: int = 0) -> Moment | None:
 
 
 def full_return(run: CaseRun, index: int = 0) -> Moment | None:
-    """Return when a swing is back at its start: from rest at every second highest point, else with its vertical motion."""
+    """Return when a swing is back at its start: from rest at every second highest point, else by its height."""
     if not run.rows.samples[0, columns.Y + 3 : columns.Y + 6].any():
         return highest_point(run, 2 * index + 1)
     return _return_along(run, np.array([0.0, 0.0, 1.0]), index)

@@ -12,7 +12,7 @@ from engine.dynamics.state import ROLLING, SLIPPING
 from engine.integrate import log as columns
 from engine.integrate.result import EventKind
 from engine.reference import events
-from engine.reference.cases import Array
+from engine.reference.reader import Array
 from engine.reference.run import CaseRun, Moment
 
 Number = Callable[[CaseRun], float | bool | None]
@@ -70,13 +70,13 @@ EXTREMES: dict[str, tuple[Callable[[CaseRun], tuple[Array, Array]], float]] = {
 }
 """Extremes over a run: the series whose least they are, and the sign that turns the number into it."""
 READ_APART = 0.02
-"""s. The cases read these extremes at the steps of their own solution, not at the extreme itself: in an upright cylinder
-A1-01 gives mu_needed 0.577885 where its closed form (2 + k)/(1 + k) g/(a theta'^2) and this engine give 0.577892. The
-given value is therefore met a little before and after the true extreme, by up to 8.6 ms in the open cases."""
+"""s. The cases read these extremes at the steps of their own solution, not at the extreme itself: in an upright
+cylinder A1-01 gives mu_needed 0.577885 where its closed form (2 + k)/(1 + k) g/(a theta'^2) and this engine give
+0.577892. The given value is therefore met a little before or after the true one, up to 8.6 ms in the open cases."""
 
 
 def extreme_off(run: CaseRun, name: str, given: float) -> float:
-    """How far from the run's extreme the given one is met, as a share of READ_APART; inf when it lies beyond the extreme."""
+    """How far from the run's extreme the given one is met, as a share of READ_APART; inf when it lies beyond it."""
     series, sign = EXTREMES[name]
     t, values = series(run)
     order = np.argsort(t, kind="stable")
@@ -110,7 +110,7 @@ def period(run: CaseRun) -> float:
     return _time(events.axial_period(run) if is_well else events.full_return(run)) - float(_start(run)[columns.T])
 
 
-def _height(run: CaseRun, find: Callable[[CaseRun, int], Moment | None], better: Callable[[float, float], float]) -> float:
+def _height(run: CaseRun, find: events.Finder, better: Callable[[float, float], float]) -> float:
     """Extreme height of the centre, m: of the start and the first turning point of that sense."""
     start, moment = float(_start(run)[columns.Y + 2]), find(run, 0)
     if moment is None:
@@ -145,7 +145,7 @@ def touch_value(run: CaseRun, column: int) -> float:
 
 
 def touch_place(run: CaseRun) -> float:
-    """x of the centre at the first touch-down, m."""
+    """Coordinate x of the centre at the first touch-down, m."""
     moment = events.before_touch(run)
     return math.nan if moment is None else float(moment.x[0])
 
@@ -195,7 +195,8 @@ def quickening(run: CaseRun) -> float | None:
 
 def _spin(rows: Array) -> Array:
     """Spin about the wall's normal, rad/s."""
-    return np.asarray(np.einsum("ij,ij->i", rows[:, columns.Y + 6 : columns.Y + 9], rows[:, columns.NORMAL : columns.NORMAL + 3]))
+    w, normal = rows[:, columns.Y + 6 : columns.Y + 9], rows[:, columns.NORMAL : columns.NORMAL + 3]
+    return np.asarray(np.einsum("ij,ij->i", w, normal))
 
 
 def _spinning(run: CaseRun) -> tuple[Array, Array]:
@@ -212,7 +213,7 @@ def spin_loss(run: CaseRun) -> float:
 
 
 def spin_stop(run: CaseRun) -> float:
-    """Time at which the spin about the normal ends, s: its line carried on to zero, if the run really has none after it."""
+    """Time at which the spin about the normal ends, s: its line carried on to zero, if there is none after that."""
     t, spin = _spinning(run)
     slope, level = np.polyfit(t, spin, 1)
     stop = -level / slope

@@ -15,7 +15,8 @@ from engine.errors import TrundleError
 from engine.integrate import log as columns
 from engine.integrate.record import Asked, Rows, roll_rows, start_row
 from engine.integrate.result import EventKind, Status
-from engine.reference.cases import Array, Case, Record
+from engine.reference.cases import Case
+from engine.reference.reader import Array, Record
 from engine.reference.surfaces import scene_of
 
 FINE, FINE_ROWS = 2.5e-4, 40_000
@@ -86,20 +87,20 @@ class CaseRun:
         return np.asarray(self.rows.samples[int(np.searchsorted(self.t, mark[columns.MARK_T], side="left"))])
 
     def crossing(self, value: Callable[[Array], Array], rising: bool, index: int = 0) -> Moment | None:
-        """Return the moment at which `value` of the sample rows passes zero for the index-th time (0: first) in one sense."""
+        """Return when `value` of the sample rows passes zero for the index-th time (0: first) in one sense."""
         rows = self.rows.samples[np.concatenate([[True], np.diff(self.t) > 0.0])]
         values = value(rows) * (1.0 if rising else -1.0)
         passed = np.flatnonzero((values[1:-1] < 0.0) & (values[2:] >= 0.0)) + 1
         if index >= len(passed):
             return None
-        near = slice(max(0, passed[index] - 1), max(0, passed[index] - 1) + STENCIL)
-        t = _root(rows[near, columns.T], values[near], (rows[passed[index], columns.T], rows[passed[index] + 1, columns.T]))
-        weights = lagrange(rows[near, columns.T], t)
-        return moment_of(weights @ rows[near, columns.Y : columns.Y + STATE], t)
+        i = int(passed[index])
+        near = rows[i - 1 : i - 1 + STENCIL]
+        t = _root(near[:, columns.T], values[i - 1 : i - 1 + STENCIL], (rows[i, columns.T], rows[i + 1, columns.T]))
+        return moment_of(lagrange(near[:, columns.T], t) @ near[:, columns.Y : columns.Y + STATE], t)
 
 
 def lagrange(nodes: Array, t: float) -> Array:
-    """Return the weights of the polynomial through values at `nodes`, at t: prod over j != i of (t - t_j)/(t_i - t_j)."""
+    """Return the weights at t of the polynomial through values at `nodes`: products of (t - t_j)/(t_i - t_j)."""
     own = np.eye(len(nodes), dtype=bool)
     ahead = np.where(own, 1.0, t - nodes[None, :])
     apart = np.where(own, 1.0, nodes[:, None] - nodes[None, :])

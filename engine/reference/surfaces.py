@@ -14,7 +14,8 @@ from engine.contact.patches import END, HOLE, START, U_MAX, U_MIN, Law, PatchLis
 from engine.contact.surface import Scene
 from engine.geometry import primitives, profiles
 from engine.geometry.pose import pose_at
-from engine.reference.cases import Array, Case, Contact, Record
+from engine.reference.cases import Case, Contact
+from engine.reference.reader import Array, Record
 
 LONG = 100.0
 """m. Half length of cylinders and edges that are meant to be endless."""
@@ -43,18 +44,7 @@ def law_of(contact: Contact, radius: float, mu: float | None = None) -> Law:
 
 
 def scene_of(case: Case, radius: float, fall: float, mu: float | None = None) -> Scene:
-    """Return the scene of a case.
-
-    Parameters
-    ----------
-    case : Case
-    radius : float
-        Of the ball, m.
-    fall : float
-        Length of path to provide for, m.
-    mu : float, optional
-        Friction that replaces the case's own.
-    """
+    """Return the scene of a case for a ball of `radius` m and a path of length `fall` m; `mu` replaces the friction."""
     tag = Tag(law_of(case.contact, radius, mu))
     hole = _hole(case.surfaces)
     patches = PatchList()
@@ -105,7 +95,8 @@ def _add(patches: PatchList, surface: Record, hole: Record | None, tag: Tag, fal
 
 def _add_rod(patches: PatchList, point: Array, way: Array, radius: float, tag: Tag) -> int:
     """Add a straight rod of this radius (0: sharp edge), LONG to either side."""
-    return patches.add_swept_outside(primitives.straight_between(point - LONG * way, point + LONG * way), radius, tag=tag)
+    line = primitives.straight_between(point - LONG * way, point + LONG * way)
+    return patches.add_swept_outside(line, radius, tag=tag)
 
 
 def _add_rim(patches: PatchList, hole: Record, tag: Tag) -> None:
