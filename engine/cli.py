@@ -234,10 +234,12 @@ def _bench(arguments: Arguments) -> int:
     """Measure speed on this machine."""
     rows = [row.as_json() for row in run_rows(window=arguments.window)]
     if arguments.json:
-        _print_json({"rows": rows})
+        _print_json({"results": rows})
         return CLEAN
     for row in rows:
-        print("  ".join(f"{name} {value}" for name, value in row.items()))
+        word = "ok  " if row["ok"] else "MISS"
+        sign = ">=" if row["better"] == "higher" else "<="
+        print(f"{word} {row['name']:58} {row['value']:12.4g} {row['unit']:16} {sign} {row['target']:g}")
     return CLEAN
 
 
