@@ -84,6 +84,7 @@ MENUS: Mapping[str, tuple[Spec, ...]] = {
         Spec("slower", "&Slower", ("-",), ROLLED),
         Spec("faster", "&Faster", ("+",), ROLLED),
         Spec("next_finding", "&Next finding", ("N",), ROLLED),
+        Spec("take_cure", "&Take its cure", ("C",), ROLLED),
     ),
     "&Help": (
         Spec("keys", "&Keys", ("F1",)),

@@ -6,6 +6,7 @@ from typing import Any, NamedTuple
 from PySide6.QtCore import QAbstractListModel, QModelIndex, QObject, QPersistentModelIndex, Qt, Slot
 
 from engine.findings.finding import Finding, Severity
+from studio.cures import offers
 from studio.words import finding_title
 from studio.workspace import Workspace
 
@@ -27,6 +28,7 @@ class FindingRow(NamedTuple):
     cure: str
     element: str
     time: float | None
+    pressable: bool
 
 
 def finding_row(finding: Finding, workspace: Workspace) -> FindingRow:
@@ -38,6 +40,7 @@ def finding_row(finding: Finding, workspace: Workspace) -> FindingRow:
         cure=finding.cure,
         element=finding.segment if workspace.element(finding.segment) is not None else "",
         time=finding.t if math.isfinite(finding.t) else None,
+        pressable=offers(workspace, finding),
     )
 
 

@@ -8,6 +8,7 @@ from typing import Any, NamedTuple
 from PySide6.QtCore import Qt, QTimer, Slot
 from PySide6.QtGui import QAction, QCloseEvent, QDragEnterEvent, QDropEvent, QGuiApplication, QKeyEvent, QResizeEvent
 from PySide6.QtWidgets import QApplication, QHBoxLayout, QMainWindow, QSplitter, QVBoxLayout, QWidget
+from shiboken6 import isValid
 
 from engine.errors import TrundleError
 from engine.model.design import Site
@@ -204,6 +205,7 @@ class MainWindow(QMainWindow):
             "slower": partial(play.change_speed, -1),
             "faster": partial(play.change_speed, 1),
             "next_finding": self.findings.go_next,
+            "take_cure": self.findings.take_chosen_cure,
             "export_parts": self.export.ask,
             "quit": self.close,
             "keys": lambda: dialogs.keys_page(self).exec(),
@@ -221,6 +223,8 @@ class MainWindow(QMainWindow):
     def _update_actions(self, *_: Any) -> None:
         """Words and usability of the commands, title of the window."""
         workspace, stack = self.workspace, self.workspace.undo_stack
+        if not isValid(stack):  # it tells once more while it is deleted
+            return
         usable = {
             "always": True,
             "selected": bool(workspace.selection),

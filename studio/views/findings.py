@@ -2,8 +2,18 @@
 
 from typing import NamedTuple
 
-from PySide6.QtCore import QModelIndex, QPersistentModelIndex, QRect, QSize, Qt, Signal, Slot
-from PySide6.QtGui import QFont, QFontMetrics, QPainter, QPen, QPolygonF
+from PySide6.QtCore import (
+    QAbstractItemModel,
+    QEvent,
+    QModelIndex,
+    QPersistentModelIndex,
+    QRect,
+    QSize,
+    Qt,
+    Signal,
+    Slot,
+)
+from PySide6.QtGui import QFont, QFontMetrics, QMouseEvent, QPainter, QPen, QPolygonF
 from PySide6.QtWidgets import (
     QFrame,
     QHBoxLayout,
@@ -16,6 +26,7 @@ from PySide6.QtWidgets import (
     QWidget,
 )
 
+from studio.cures import cure_of
 from studio.item_models import TOKENS, FindingRow, FindingsModel
 from studio.shapes import mark_outline
 from studio.theme import Theme
@@ -40,7 +51,10 @@ class Line(NamedTuple):
 
 
 class FindingDelegate(QStyledItemDelegate):
-    """Draws one finding."""
+    """Draws one finding; a cure in the accent can be pressed."""
+
+    pressed = Signal(int)
+    """Row whose cure was pressed."""
 
     def __init__(self, theme: Theme, parent: QWidget | None = None) -> None:
         super().__init__(parent)
@@ -75,6 +89,15 @@ class FindingDelegate(QStyledItemDelegate):
         painter.setBrush(colour if row.shape == "triangle" else Qt.BrushStyle.NoBrush)
         painter.drawPolygon(QPolygonF(outline))
 
+    def editorEvent(self, event: QEvent, model: QAbstractItemModel, option: QStyleOptionViewItem, index: Index) -> bool:
+        """Take a press on the cure."""
+        row = index.data(FindingsModel.ROW)
+        if event.type() == QEvent.Type.MouseButtonRelease and isinstance(event, QMouseEvent) and row.pressable:
+            if event.position().y() >= cure_top(option.rect, row, option.font):
+                self.pressed.emit(index.row())
+                return True
+        return super().editorEvent(event, model, option, index)
+
     def sizeHint(self, option: QStyleOptionViewItem, index: Index) -> QSize:
         """Height of the texts at the width of the list."""
         view = option.widget
@@ -93,8 +116,21 @@ def lines_of(row: FindingRow, font: QFont) -> list[Line]:
     small.setPixelSize(SENTENCE_SIZE)
     small_bold.setPixelSize(SENTENCE_SIZE)
     small_bold.setWeight(QFont.Weight.DemiBold)
-    texts = (Line(row.title, bold, "ink"), Line(row.sentence, small, "soft"), Line(row.cure, small_bold, "accent"))
+    texts = (
+        Line(row.title, bold, "ink"),
+        Line(row.sentence, small, "soft"),
+        Line(row.cure, small_bold, "accent" if row.pressable else "ink"),
+    )
     return [line for line in texts if line.text]
+
+
+def cure_top(rect: QRect, row: FindingRow, font: QFont) -> int:
+    """Height in the list from which on a finding shows its cure, px."""
+    top = rect.top() + MARGIN
+    for line in lines_of(row, font)[:-1]:
+        box = QRect(0, top, rect.width() - TEXT_LEFT - MARGIN, 1000)
+        top = QFontMetrics(line.font).boundingRect(box, int(WRAP), line.text).bottom() + GAP
+    return top
 
 
 class FindingsList(QListView):
@@ -120,7 +156,9 @@ class FindingsPanel(QFrame):
         self.list = FindingsList()
         self.list.setModel(self.model)
         self.list.setAccessibleName("Findings")
-        self.list.setItemDelegate(FindingDelegate(theme, self.list))
+        delegate = FindingDelegate(theme, self.list)
+        delegate.pressed.connect(self.take_cure, Qt.ConnectionType.QueuedConnection)  # after the click has gone there
+        self.list.setItemDelegate(delegate)
         self.list.setVerticalScrollMode(QListView.ScrollMode.ScrollPerPixel)
         self.list.setHorizontalScrollBarPolicy(Qt.ScrollBarPolicy.ScrollBarAlwaysOff)
         self.list.clicked.connect(self._go)
@@ -173,6 +211,26 @@ class FindingsPanel(QFrame):
             self.chosen.emit(row.element)
         if row.time is not None:
             self._workspace.set_time(row.time)
+
+    @Slot()
+    def take_chosen_cure(self) -> None:
+        """Take the cure of the chosen finding, of the worst one that has any when none is chosen."""
+        place = self.list.currentIndex().row()
+        if place < 0:
+            place = next((number for number, row in enumerate(self.model.rows) if row.pressable), -1)
+        if place >= 0:
+            self.take_cure(place)
+
+    @Slot(int)
+    def take_cure(self, place: int) -> None:
+        """Put the cure of a finding in place as one step."""
+        roll = self._workspace.roll
+        if roll is None or not self._workspace.current or place >= len(roll.findings):
+            return
+        cure = cure_of(self._workspace, roll.findings[place])
+        if cure is not None:
+            self._workspace.edit(cure.label, cure.design)
+            self._workspace.select((cure.element,))
 
     @Slot()
     def go_next(self) -> None:

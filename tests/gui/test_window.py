@@ -3,7 +3,7 @@
 import json
 
 import pytest
-from PySide6.QtCore import QMimeData, QPointF, Qt, QUrl
+from PySide6.QtCore import QMimeData, QPoint, QPointF, Qt, QUrl
 from PySide6.QtGui import QDropEvent
 from PySide6.QtWidgets import QAbstractButton, QComboBox, QFrame, QLineEdit, QListWidget, QWidget
 
@@ -316,3 +316,17 @@ def test_parts_are_exported_with_progress_and_told(window, bend_file, tmp_path, 
     files = sorted(path.name for path in (tmp_path / "parts").iterdir())
     assert len(files) == 3
     assert all(name.endswith("-mm.stl") for name in files)
+
+
+def test_cure_is_taken_by_pressing_it_and_undone(window, bend_file, qtbot):
+    workspace = window.workspace
+    opened(window, bend_file, qtbot)
+    before, count = workspace.design, len(workspace.roll.findings)
+    view = window.findings.list
+    row = view.visualRect(window.findings.model.index(0, 0))
+    qtbot.mouseClick(view.viewport(), Qt.MouseButton.LeftButton, pos=QPoint(row.left() + 60, row.bottom() - 14))
+    qtbot.waitUntil(lambda: workspace.design is not before and workspace.current, timeout=LIMIT_MS)
+    assert workspace.selected_element.kind == "transition"
+    assert len(workspace.roll.findings) < count
+    window.actions_by_name["undo"].trigger()
+    assert workspace.design is before
