@@ -209,3 +209,35 @@ def _jump(entry: Placed) -> Outline:
     start, end = entry.inlet.position, entry.outlet.position if entry.outlet is not None else entry.inlet.position
     line = np.stack([start[:2], end[:2]])
     return Outline(entry.index, entry.element.id, float(max(start[2], end[2])), line, None, (), (line,))
+
+
+# -- what is where --------------------------------------------------------------------------------
+def nearest_outline(outlines: list[Outline], point: Array, reach: float) -> Outline | None:
+    """Topmost outline that holds a point (2,), else the nearest one within `reach` (m)."""
+    for outline in reversed(outlines):
+        if outline.edges and inside(outline.fill, point):
+            return outline
+    best, found = reach, None
+    for outline in outlines:
+        distance = distance_to_line(outline.fill, point)
+        if distance <= best:
+            best, found = distance, outline
+    return found
+
+
+def inside(corners: Array, point: Array) -> bool:
+    """Whether a closed outline (n, 2) holds a point (even-odd rule)."""
+    x, y = corners[:, 0] - point[0], corners[:, 1] - point[1]
+    x2, y2 = np.roll(x, -1), np.roll(y, -1)
+    crosses = (y > 0.0) != (y2 > 0.0)
+    at = x[crosses] + (x2[crosses] - x[crosses]) * y[crosses] / (y[crosses] - y2[crosses])
+    return bool(np.count_nonzero(at > 0.0) % 2)
+
+
+def distance_to_line(corners: Array, point: Array) -> float:
+    """Distance of a point from a line through points (n, 2), m."""
+    start, step = corners[:-1], np.diff(corners, axis=0)
+    size = np.maximum((step * step).sum(axis=1), 1e-18)
+    share = np.clip(((point - start) * step).sum(axis=1) / size, 0.0, 1.0)
+    away = start + share[:, None] * step - point
+    return float(np.sqrt((away * away).sum(axis=1).min()))
