@@ -229,6 +229,7 @@ QMenu { background: @sheet; border: 1px solid @line; padding: 4px 0; }
 QMenu::item { padding: 5px 28px 5px 24px; }
 QMenu::item:selected { background: @hover; }
 QMenu::item:disabled { color: @soft; }
+QMenu::icon { padding-left: 10px; }
 QMenu::separator { height: 1px; background: @line; margin: 4px 0; }
 QMenu::indicator { width: 10px; height: 10px; margin-left: 8px; }
 QMenu::indicator:checked { background: @accent; border-radius: 5px; }
@@ -237,6 +238,7 @@ QSplitter::handle:hover { background: @line; }
 QScrollArea, QScrollArea > QWidget > QWidget { background: transparent; border: none; }
 QListView, QTreeView, QTableView { background: @sheet; border: none; outline: none;
   selection-background-color: @hover; selection-color: @ink; }
+QListWidget::item { padding: 5px 6px; border-bottom: 1px solid @line; }
 QScrollBar:vertical { background: transparent; width: 8px; margin: 0; }
 QScrollBar::handle:vertical { background: @line; border-radius: 3px; min-height: 24px; margin: 1px; }
 QScrollBar:horizontal { background: transparent; height: 8px; margin: 0; }
