@@ -316,10 +316,10 @@ def nearest_wall(walls, point, r, active):
 
 @kernel
 def is_linked(walls, active, patch):
-    """Return whether `patch` continues `active` beyond one of its boundaries."""
+    """Return whether `patch` continues `active` smoothly beyond one of its boundaries."""
     if active < 0:
         return False
     for side in range(6):
-        if walls.link[active, side] == patch:
+        if walls.link[active, side] == patch and walls.smooth[active, side]:
             return True
     return False

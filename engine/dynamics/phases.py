@@ -6,7 +6,7 @@ from engine.constants import STOPPED_SPIN
 from engine.contact.query import ANYWHERE, foot_on
 from engine.contact.surface import MU_STATIC
 from engine.dynamics.rates import contact_rates
-from engine.dynamics.state import FLIGHT, REST, ROLLING, SLIPPING, Mode
+from engine.dynamics.state import FLIGHT, LOST, REST, ROLLING, SLIPPING, Mode, kinetic_per_mass
 from engine.kernel import kernel
 
 STUCK_SLIP = 1e-7
@@ -69,19 +69,32 @@ def mode_on(walls, ball, patch, y, out):
 
 
 @kernel
-def stop(y):
-    """Set velocity and spin to zero."""
+def stop(y, ball):
+    """Set velocity and spin to zero; what was left of their energy is booked as lost to spin friction."""
+    y[LOST + 2] += kinetic_per_mass(y, ball)
     for j in range(3, 9):
         y[j] = 0.0
 
 
 @kernel
+def halt(y, ball, normal):
+    """Set velocity and rolling to zero, keep the spin about the normal."""
+    before = kinetic_per_mass(y, ball)
+    spin = y[6] * normal[0] + y[7] * normal[1] + y[8] * normal[2]
+    for j in range(3):
+        y[3 + j] = 0.0
+        y[6 + j] = spin * normal[j]
+    y[LOST + 1] += before - kinetic_per_mass(y, ball)
+
+
+@kernel
 def holds_still(walls, ball, mode, y, out):
-    """Stop the ball and return whether it stays: the pull along the wall is within what rolling loss resists, |f_t| <= (b/r) N.
+    """Halt the ball and return whether it stays: the pull along the wall is within what rolling loss resists, |f_t| <= (b/r) N.
 
     A ball on a plane stays where tan(slope) <= b/r = c_rr.
     """
-    stop(y)
+    foot = foot_on(walls, mode.patch, (y[0], y[1], y[2]), ball.radius, ANYWHERE)
+    halt(y, ball, (foot.nx, foot.ny, foot.nz))
     frictionless = Mode(mode.patch, SLIPPING, 0, 1)
     contact = contact_rates(walls, ball, frictionless, y, ANYWHERE, out)
     # without slip velocity the slipping force is zero, so the acceleration is the pull along the wall

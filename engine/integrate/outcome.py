@@ -10,7 +10,7 @@ from engine.constants import IMPACT_ROUNDS, REST_IMPACT
 from engine.contact.query import ANYWHERE, foot_on
 from engine.contact.surface import EXIT, OPEN, RESTITUTION, ROLE_CATCH, ROLE_FLOOR
 from engine.dynamics.impact import strike
-from engine.dynamics.phases import holds_still, mode_on, put_back, rest_mode
+from engine.dynamics.phases import holds_still, mode_on, put_back, rest_mode, stop
 from engine.dynamics.state import FLIGHT, ROLLING, SLIPPING, Mode
 from engine.integrate.events import CONE, LIFT, SIDE, SLIP, STOP
 from engine.kernel import kernel
@@ -26,6 +26,9 @@ STEP_DOWN = 1e-6
 """m. A next wall that lies farther below than this is left: the ball flies and lands."""
 PARTING = 1e-4
 """m/s. A next wall that falls away faster than this is left at once."""
+
+WEDGED = 0.02
+"""m/s. A ball pressed into two walls slower than this is at rest between them: it would fall 20 micrometres from that."""
 
 
 class Outcome(NamedTuple):
@@ -81,8 +84,8 @@ def after_slip(walls, ball, mode, y, slip, out):
 @kernel
 def after_stop(walls, ball, mode, y, out):
     """Return what follows a stop: rest where rolling loss holds the ball, else it rolls on from rest."""
-    held = holds_still(walls, ball, mode, y, out)
-    if held:
+    if holds_still(walls, ball, mode, y, out):
+        stop(y, ball)
         return Outcome(rest_mode(mode), RESTING, RESTED, mode.patch, 0.0, (0.0, 0.0, 0.0), 0.0)
     return plain(mode_on(walls, ball, mode.patch, y, out), STOPPING, mode.patch, 0.0)
 
@@ -178,8 +181,17 @@ def between(walls, ball, pair, y, out):
         other = second if stay == first else first
         new = mode_on(walls, ball, other, y, out)
         if new.regime != FLIGHT and presses(walls, ball, new, y, n, out):
-            return new, lost, CHATTER
+            return between_two(ball, new, y, lost)
     return new, lost, GOES_ON
+
+
+@kernel
+def between_two(ball, mode, y, lost):
+    """Return the end of a ball that presses two walls: at rest when it has no speed left, else beyond one contact."""
+    if math.sqrt(y[3] * y[3] + y[4] * y[4] + y[5] * y[5]) < WEDGED:
+        stop(y, ball)
+        return rest_mode(mode), lost, RESTED
+    return mode, lost, CHATTER
 
 
 @kernel
