@@ -5,6 +5,7 @@ No widgets and no Qt: everything here is arrays in, arrays out. Shapes of elemen
 """
 
 import math
+from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cached_property
 from typing import TYPE_CHECKING, NamedTuple
@@ -202,6 +203,14 @@ def finding_sample(finding: Finding, path: BallPath, layout: Layout) -> int | No
     if len(rows) == 0:
         return None
     return int(rows[np.argmin(((path.place[rows] - place) ** 2).sum(axis=1))])
+
+
+def shown_findings(findings: Sequence[Finding]) -> list[Finding]:
+    """Findings to mark on a drawing, worst first: of each kind in each element the first one only."""
+    found: dict[tuple[str, str, str], Finding] = {}
+    for finding in findings:
+        found.setdefault((finding.kind.value, finding.severity.value, finding.segment), finding)
+    return list(found.values())
 
 
 # -- lines of many colours ------------------------------------------------------------------------

@@ -9,7 +9,7 @@ from collections.abc import Callable
 from typing import ClassVar, NamedTuple
 
 import numpy as np
-from PySide6.QtCore import QCoreApplication, QEvent, QPointF, QRectF, QSize, Qt
+from PySide6.QtCore import QCoreApplication, QEvent, QLine, QPointF, QRectF, QSize, Qt
 from PySide6.QtGui import QFocusEvent, QKeyEvent, QMouseEvent, QPainter, QPaintEvent, QPixmap, QResizeEvent, QWheelEvent
 from PySide6.QtWidgets import QWidget
 
@@ -192,14 +192,17 @@ class Canvas(QWidget):
         low, high = self.to_world(QPointF(0, self.height())), self.to_world(QPointF(self.width(), 0))
         for axis in (0, 1) if across else (1,):
             step = self.grid_step(axis)
-            for number in range(math.ceil(low[axis] / step), math.floor(high[axis] / step) + 1):
-                painter.setPen(pen(self.theme.colour("grid_major" if number % MAJOR == 0 else "grid")))
-                spot = self.to_screen(np.full((1, 2), number * step))[0]
-                if axis == 0:
-                    painter.drawLine(round(spot[0]), 0, round(spot[0]), self.height())
-                else:
-                    painter.drawLine(0, round(spot[1]), self.width(), round(spot[1]))
+            numbers = range(math.ceil(low[axis] / step), math.floor(high[axis] / step) + 1)
+            for strong, token in ((False, "grid"), (True, "grid_major")):
+                painter.setPen(pen(self.theme.colour(token)))
+                lines = [self._grid_line(axis, number * step) for number in numbers if (number % MAJOR == 0) is strong]
+                painter.drawLines(lines)
         painter.setRenderHint(QPainter.RenderHint.Antialiasing)
+
+    def _grid_line(self, axis: int, value: float) -> QLine:
+        """Line of the grid at a coordinate, m."""
+        spot = round(float(self.origin[axis] + value * self.scale[axis] * (1.0, -1.0)[axis]))
+        return QLine(spot, 0, spot, self.height()) if axis == 0 else QLine(0, spot, self.width(), spot)
 
     def grid_step(self, axis: int, least: float = GRID_STEP) -> float:
         """Round length (1, 2, 5 in the unit of the design) of at least `least` px, m."""

@@ -17,6 +17,7 @@ from studio.display import (
     levels_of,
     moment_at,
     path_of,
+    shown_findings,
 )
 from studio.outlines import Outline, nearest_outline, outlines_of
 from studio.theme import Theme
@@ -26,6 +27,7 @@ from studio.widgets.marks import GRIP, MARK, draw_ball, draw_finding, draw_grip
 from studio.widgets.strokes import (
     Labels,
     Stroke,
+    dotted,
     draw_path,
     draw_slip,
     draw_text,
@@ -102,7 +104,7 @@ class PlanView(Canvas):
     # -- painting ---------------------------------------------------------------------------------
     def paint_static(self, painter: QPainter) -> None:
         """Paint grid, site, walls, path, findings and words."""
-        labels = Labels(QRectF(self.rect()).adjusted(6, 6, -6, -6))
+        labels = Labels(QRectF(self.rect()).adjusted(6, 6, -6, -6), self._lines())
         labels.take(QRectF(8, 6, 60, 22))
         self.paint_grid(painter)
         self._paint_site(painter)
@@ -117,6 +119,11 @@ class PlanView(Canvas):
         self._paint_scale(painter, labels)
         plan_words.write_site(painter, self, labels)
         plan_words.write_names(painter, self, labels)
+
+    def _lines(self) -> Array:
+        """Points on screen of the edges of walls, which words keep off."""
+        found = [dotted(self.to_screen(line)) for outline in self._outlines for line in outline.edges]
+        return np.concatenate(found) if found else np.zeros((0, 2))
 
     def _paint_site(self, painter: QPainter) -> None:
         site = self.workspace.design.site
@@ -179,14 +186,15 @@ class PlanView(Canvas):
         if roll is None or not self.workspace.current:
             return
         ink = small_ink(self.theme, self.font(), "ink")
-        for finding in reversed(roll.findings):
+        shown = shown_findings(roll.findings)
+        for finding in reversed(shown):
             place = finding_place(finding, self.layout_now)
             if place is None:
                 continue
             at = self.point(place[0], place[1])
             draw_finding(painter, finding, at, self.theme)
             labels.take(QRectF(at.x() - 0.5 * MARK, at.y() - 0.5 * MARK, MARK, MARK))
-        for finding in roll.findings:
+        for finding in shown:
             place = finding_place(finding, self.layout_now)
             if place is not None and finding.severity.value != "note":
                 at = self.point(place[0], place[1])

@@ -125,7 +125,7 @@ def write_names(painter: QPainter, view: "PlanView", labels: Labels) -> None:
         box = _box(view, entry)
         if not selected and max(box.width(), box.height()) < NAME_ROOM:
             continue
-        _write_name(painter, labels, box, (entry.element.title + _turn_words(entry), bold if selected else ink))
+        _write_name(painter, labels, box, (entry.element.title + _turn_words(entry), bold if selected else ink, selected))
 
 
 def _box(view: "PlanView", entry: "Placed") -> QRectF:
@@ -133,8 +133,8 @@ def _box(view: "PlanView", entry: "Placed") -> QRectF:
     return QRectF(view.point(float(low[0]), float(high[1])), view.point(float(high[0]), float(low[1])))
 
 
-def _write_name(painter: QPainter, labels: Labels, box: QRectF, words: tuple[str, Ink]) -> None:
-    text, ink = words
+def _write_name(painter: QPainter, labels: Labels, box: QRectF, words: tuple[str, Ink, bool]) -> None:
+    text, ink, needed = words
     width, height = text_size(ink.font, text)
     middle = box.center().x() - 0.5 * width
     below, above = QPointF(middle, box.bottom() + 6.0), QPointF(middle, box.top() - height - 6.0)
@@ -142,7 +142,8 @@ def _write_name(painter: QPainter, labels: Labels, box: QRectF, words: tuple[str
         QPointF(box.right() + 8.0, box.center().y() - 0.5 * height),
         QPointF(box.left() - width - 8.0, box.center().y() - 0.5 * height),
     ]
-    at = labels.place((width, height), [below, above, *beside])
+    inner = QPointF(middle, box.center().y() - 0.5 * height)
+    at = labels.place((width, height), [below, above, *beside, inner], needed=needed)
     if at is not None:
         draw_text(painter, at, text, ink)
 

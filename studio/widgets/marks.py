@@ -30,13 +30,19 @@ def mark_colour(finding: Finding, theme: Theme) -> QColor:
 def draw_finding(painter: QPainter, finding: Finding, at: QPointF, theme: Theme) -> None:
     """Draw the mark of a finding on a ground of sheet colour; filled when the run fails by it."""
     shape, colour = mark_shape(finding), mark_colour(finding, theme)
-    painter.setPen(pen(theme.colour("sheet"), 4.5))
+    painter.setPen(Qt.PenStyle.NoPen)
     painter.setBrush(theme.colour("sheet"))
-    outline = QPolygonF(mark_outline(shape, at.x(), at.y(), MARK))
-    painter.drawPolygon(outline)
+    _draw_shape(painter, shape, at, MARK + 6.0)
     painter.setPen(pen(colour, 1.7))
     painter.setBrush(colour if shape == "triangle" else theme.colour("sheet"))
-    painter.drawPolygon(outline)
+    _draw_shape(painter, shape, at, MARK)
+
+
+def _draw_shape(painter: QPainter, shape: str, at: QPointF, size: float) -> None:
+    if shape == "circle":
+        painter.drawEllipse(at, 0.45 * size, 0.45 * size)
+    else:
+        painter.drawPolygon(QPolygonF(mark_outline(shape, at.x(), at.y(), size)))
 
 
 def draw_grip(painter: QPainter, at: QPointF, theme: Theme, *, held: bool = False) -> None:

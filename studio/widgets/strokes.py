@@ -6,8 +6,8 @@ from typing import NamedTuple
 
 import numpy as np
 import pyqtgraph
-from PySide6.QtCore import QPointF, QRectF, Qt
-from PySide6.QtGui import QColor, QFont, QFontMetricsF, QPainter, QPainterPath, QPen, QPolygonF
+from PySide6.QtCore import QPointF, QRectF, QSize, Qt
+from PySide6.QtGui import QColor, QFont, QFontMetricsF, QPainter, QPainterPath, QPen, QPixmap, QPolygonF
 from pyqtgraph.functions import arrayToQPolygonF
 
 from engine.integrate.result import Regime
@@ -21,7 +21,7 @@ THIN_STEP = 1.5
 """px between the points of a drawn path."""
 TICK_STEP, TICK_SIZE = 5.0, 6.0
 """px between the ticks that mark slipping, and their length."""
-HALO = 3.0
+HALO = 1.75
 """px of sheet colour round a text that stands on a drawing."""
 
 
@@ -130,23 +130,45 @@ def text_size(font: QFont, text: str) -> tuple[float, float]:
 
 def draw_text(painter: QPainter, at: QPointF, text: str, ink: Ink) -> None:
     """Write a text whose box has its upper left corner at a place."""
-    metrics = QFontMetricsF(ink.font)
-    base = QPointF(round(at.x()), round(at.y() + metrics.ascent()))
+    base = QPointF(round(at.x()), round(at.y() + QFontMetricsF(ink.font).ascent()))
     if ink.halo is not None:
-        outline = QPainterPath()
-        outline.addText(base, ink.font, text)
-        painter.setBrush(Qt.BrushStyle.NoBrush)
-        painter.strokePath(outline, QPen(ink.halo, HALO, Qt.PenStyle.SolidLine, Qt.PenCapStyle.RoundCap, Qt.PenJoinStyle.RoundJoin))
+        ratio = painter.device().devicePixelRatioF()
+        halo = _halo(text, ink.font.toString(), ink.halo.name(), ratio)
+        painter.drawPixmap(QPointF(base.x() - HALO, base.y() - HALO - round(QFontMetricsF(ink.font).ascent())), halo)
     painter.setFont(ink.font)
     painter.setPen(ink.colour)
     painter.drawText(base, text)
 
 
-class Labels:
-    """Places of texts already written; a new one goes to the first of its places that is free."""
+@lru_cache(maxsize=512)
+def _halo(text: str, font_name: str, colour: str, ratio: float) -> QPixmap:
+    """Sheet colour round a text, kept because outlines of letters are slow to stroke."""
+    font = QFont()
+    font.fromString(font_name)
+    width, height = text_size(font, text)
+    size = QSize(int(ratio * (width + 2.0 * HALO + 2.0)), int(ratio * (height + 2.0 * HALO + 2.0)))
+    picture = QPixmap(size)
+    picture.setDevicePixelRatio(ratio)
+    picture.fill(Qt.GlobalColor.transparent)
+    outline = QPainterPath()
+    outline.addText(QPointF(HALO, HALO + round(QFontMetricsF(font).ascent())), font, text)
+    painter = QPainter(picture)
+    painter.setRenderHint(QPainter.RenderHint.Antialiasing)
+    round_pen = QPen(QColor(colour), 2.0 * HALO, Qt.PenStyle.SolidLine, Qt.PenCapStyle.RoundCap, Qt.PenJoinStyle.RoundJoin)
+    painter.strokePath(outline, round_pen)
+    painter.end()
+    return picture
 
-    def __init__(self, inside: QRectF) -> None:
+
+class Labels:
+    """Places of texts already written; a new one goes to the first of its places that is free.
+
+    `inside` is the sheet; `lines` (n, 2) px are points of the drawing that texts should rather not cover.
+    """
+
+    def __init__(self, inside: QRectF, lines: Array | None = None) -> None:
         self.inside = inside
+        self.lines = lines if lines is not None else np.zeros((0, 2))
         self.taken: list[QRectF] = []
 
     def take(self, rect: QRectF) -> None:
@@ -157,14 +179,32 @@ class Labels:
         """Whether a place is inside and free."""
         return self.inside.contains(rect) and not any(rect.intersects(other) for other in self.taken)
 
-    def place(self, size: tuple[float, float], corners: Sequence[QPointF]) -> QPointF | None:
-        """First free one of some upper left corners, taken at once; None when all are taken."""
-        for corner in corners:
-            rect = QRectF(corner.x() - 2.0, corner.y() - 1.0, size[0] + 4.0, size[1] + 2.0)
-            if self.free(rect):
-                self.take(rect)
-                return corner
-        return None
+    def clear(self, rect: QRectF) -> bool:
+        """Whether a place is clear of the lines of the drawing."""
+        x, y = self.lines[:, 0], self.lines[:, 1]
+        return not bool(((x > rect.left()) & (x < rect.right()) & (y > rect.top()) & (y < rect.bottom())).any())
+
+    def place(
+        self, size: tuple[float, float], corners: Sequence[QPointF], *, needed: bool = True
+    ) -> QPointF | None:
+        """First free one of some upper left corners, taken at once; None when all are taken.
+
+        Places clear of lines come first; a text that is not `needed` is left out rather than written over lines.
+        """
+        rects = [(corner, QRectF(corner.x() - 2.0, corner.y() - 1.0, size[0] + 4.0, size[1] + 2.0)) for corner in corners]
+        free = [(corner, rect) for corner, rect in rects if self.free(rect)]
+        chosen = next((pair for pair in free if self.clear(pair[1])), free[0] if free and needed else None)
+        if chosen is None:
+            return None
+        self.take(chosen[1])
+        return chosen[0]
+
+
+def dotted(points: Array, step: float = 5.0) -> Array:
+    """Points (m, 2) each `step` px along a line (n, 2) px, for `Labels`."""
+    along = np.concatenate([[0.0], np.cumsum(np.hypot(*np.diff(points, axis=0).T))])
+    places = np.arange(0.0, min(along[-1], 4000.0 * step), step)
+    return np.stack([np.interp(places, along, points[:, 0]), np.interp(places, along, points[:, 1])], axis=1)
 
 
 def round_about(x: float, y: float, size: tuple[float, float], gap: float) -> list[QPointF]:
