@@ -72,8 +72,11 @@ def _write_radius(painter: QPainter, view: "PlanView", labels: Labels, entry: "P
     painter.drawLine(at, end)
     words = f"R {length_words(radius, view.workspace.design.units)}"
     ink = Ink(view.theme.colour("accent"), font_of(view.font(), USUAL, bold=True), view.theme.colour("sheet"))
-    middle = 0.5 * (at + end)
-    write_about(painter, labels, middle, words, ink, 4.0)
+    middle, size = 0.5 * (at + end), text_size(ink.font, words)
+    above, below, *beside = sorted(round_about(middle.x(), middle.y(), size, 5.0), key=lambda corner: abs(corner.x() + 0.5 * size[0] - middle.x()))
+    corner = labels.place(size, [above, below, *beside])
+    if corner is not None:
+        draw_text(painter, corner, words, ink)
 
 
 def _circle(entry: "Placed") -> tuple[np.ndarray | None, float | None]:

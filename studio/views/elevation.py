@@ -1,0 +1,331 @@
+"""The developed elevation: height over the way travelled, head line above it, losses, regimes, findings, time cursor."""
+
+import math
+from typing import Any, ClassVar, NamedTuple
+
+import numpy as np
+from PySide6.QtCore import QPointF, QRectF, Qt, Slot
+from PySide6.QtGui import QKeyEvent, QPainter
+from PySide6.QtWidgets import QWidget
+
+from engine.integrate.result import Regime
+from studio.display import (
+    Array,
+    BallPath,
+    arrivals,
+    finding_sample,
+    levels_of,
+    losses_of,
+    moment_at,
+    path_of,
+    regime_runs,
+    shown_findings,
+    time_at,
+)
+from studio.resources import USUAL
+from studio.theme import Theme
+from studio.views.canvas import Canvas, Margins
+from studio.views.plan_words import length_words, write_about
+from studio.widgets.marks import MARK, draw_ball, draw_finding, draw_rest
+from studio.widgets.strokes import (
+    Ink,
+    Labels,
+    Stroke,
+    dotted,
+    draw_path,
+    draw_slip,
+    draw_text,
+    font_of,
+    path_colours,
+    pen,
+    polygon,
+    small_ink,
+    text_size,
+    thin,
+    thinned,
+)
+from studio.words import finding_title, placed_element
+from studio.workspace import Workspace
+
+PATH_WIDTH = 3.0
+STALE = 0.35
+RULER = 28.0
+"""px from the lower edge: line on which the ticks of the elements stand."""
+RIGHT_AXIS = 60.0
+"""px kept on the right for heights."""
+GRID_STEP = 34.0
+READOUT_GAP = 8.0
+TIME_STEP = 0.02
+"""s. One press of an arrow key."""
+CAUSES = {"slip": "slip", "rolling": "rolling", "spin": "spin", "air": "air", "impact": "impact"}
+
+
+class Name(NamedTuple):
+    """Name of an element under the ruler: id, words, where it begins on screen, where its words stand."""
+
+    element: str
+    words: str
+    x: float
+    box: QRectF
+
+
+class ElevationView(Canvas):
+    """Developed elevation of the run in work."""
+
+    margins: ClassVar[Margins] = Margins(24.0, 52.0, RIGHT_AXIS + 8.0, 52.0)
+    stretches: ClassVar[bool] = True
+
+    def __init__(self, workspace: Workspace, theme: Theme, parent: QWidget | None = None) -> None:
+        super().__init__(workspace, theme, "Elevation, developed", parent)
+        self.setAccessibleDescription("Height and head over the way travelled; click or drag to move the time cursor.")
+        self._path: BallPath | None = None
+        self.names: list[Name] = []
+        self._take_roll()
+        workspace.rolled.connect(self._take_roll)
+        workspace.designChanged.connect(self.redraw)
+        workspace.selectionChanged.connect(self.redraw)
+        workspace.timeChanged.connect(self.update)
+
+    @Slot()
+    def _take_roll(self, *_: Any) -> None:
+        empty = self._path is None
+        self._path = path_of(self.workspace.roll)
+        self.fit() if self._fitted or empty else self.redraw()
+
+    def world_bounds(self) -> Array | None:
+        """From the release to the end, from the lowest place to the highest head, m."""
+        path = self._path
+        if path is None:
+            return None
+        low, high = float(path.place[:, 2].min()), float(max(path.head.max(), path.place[:, 2].max()))
+        return np.array([[0.0, low], [max(float(path.developed[-1]), 1e-3), max(high, low + 1e-3)]])
+
+    @property
+    def exaggeration(self) -> float:
+        """How many times heights are drawn larger than lengths."""
+        return float(self.scale[1] / self.scale[0])
+
+    # -- painting ---------------------------------------------------------------------------------
+    def paint_static(self, painter: QPainter) -> None:
+        """Paint heights, head line, track line, names, findings and losses."""
+        path = self._path
+        if path is None:
+            self._paint_nothing(painter)
+            return
+        painter.setOpacity(1.0 if self.workspace.current else STALE)
+        labels = Labels(QRectF(self.rect()).adjusted(6, 30, -6.0, -RULER - 4.0))
+        self._paint_heights(painter)
+        painter.save()
+        painter.setClipRect(QRectF(1.0, 30.0, self.width() - RIGHT_AXIS - 2.0, self.height() - RULER - 31.0))
+        track, head = self._paint_lines(painter, path)
+        labels.lines = np.concatenate([dotted(track), dotted(head)])
+        self._paint_rests(painter, path)
+        painter.restore()
+        self._paint_names(painter, path)
+        self._paint_findings(painter, labels, path)
+        self._write_head(painter, labels, head)
+        self._write_losses(painter, path)
+        painter.setOpacity(1.0)
+
+    def _paint_nothing(self, painter: QPainter) -> None:
+        """Say why there is nothing to see."""
+        words = self.workspace.problem or "Rolling …" if self.workspace.run is not None else "No run yet"
+        ink = small_ink(self.theme, self.font())
+        width, height = text_size(ink.font, words)
+        at = QPointF(max(12.0, 0.5 * (self.width() - width)), 0.5 * (self.height() - height))
+        draw_text(painter, at, words, ink)
+
+    def _paint_heights(self, painter: QPainter) -> None:
+        """Level lines at round heights, and the heights on the right."""
+        step = self.grid_step(1, GRID_STEP)
+        low, high = self.to_world(QPointF(0, self.height() - RULER - 8.0))[1], self.to_world(QPointF(0, 34.0))[1]
+        ink = small_ink(self.theme, self.font(), halo=False)
+        units = self.workspace.design.units
+        right = self.width() - RIGHT_AXIS
+        for number in range(math.ceil(low / step), math.floor(high / step) + 1):
+            y = round(self.point(0.0, number * step).y())
+            painter.setRenderHint(QPainter.RenderHint.Antialiasing, False)
+            painter.setPen(pen(self.theme.colour("grid_major" if number % 5 == 0 else "grid")))
+            painter.drawLine(1, y, round(right), y)
+            painter.setRenderHint(QPainter.RenderHint.Antialiasing)
+            words = length_words(number * step, units, signed=True)
+            width, height = text_size(ink.font, words)
+            draw_text(painter, QPointF(self.width() - 10.0 - width, y - 0.5 * height), words, ink)
+
+    def _paint_lines(self, painter: QPainter, path: BallPath) -> tuple[Array, Array]:
+        """Gap between head line and track, head line, track in the colours of the speed; return both on screen."""
+        track = self.to_screen(np.stack([path.developed, path.place[:, 2]], axis=1))
+        head = self.to_screen(np.stack([path.developed, path.head], axis=1))
+        stroke = thin(Stroke(track, levels_of(path.speed, path.top_speed), path.regime))
+        head = head[thinned(head, 1.5, np.zeros(len(head), dtype=np.int64))]
+        painter.setPen(Qt.PenStyle.NoPen)
+        painter.setBrush(self.theme.colour("second", 0.09))
+        painter.drawPolygon(polygon(np.concatenate([head, stroke.points[::-1]])))
+        painter.setBrush(Qt.BrushStyle.NoBrush)
+        painter.setPen(pen(self.theme.colour("second"), 1.6))
+        painter.drawPolyline(polygon(head))
+        draw_path(painter, stroke, path_colours(self.theme.dark), PATH_WIDTH)
+        draw_slip(painter, stroke, self.theme.colour("warning"), 3.0)
+        return stroke.points, head
+
+    def _paint_rests(self, painter: QPainter, path: BallPath) -> None:
+        """Bars where the ball rests."""
+        for first, _ in regime_runs(path, Regime.REST):
+            at = self.point(float(path.developed[first]), float(path.place[first, 2]))
+            draw_rest(painter, at, self.theme.colour("ink"))
+
+    # -- words ------------------------------------------------------------------------------------
+    def _paint_names(self, painter: QPainter, path: BallPath) -> None:
+        """Ticks where the ball enters each element, names where there is room: the selected first, then from the left."""
+        roll = self.workspace.roll
+        if roll is None:
+            return
+        self.names = []
+        base = self.height() - RULER
+        painter.setPen(pen(self.theme.colour("line")))
+        painter.drawLine(QPointF(1.0, base), QPointF(self.width() - RIGHT_AXIS, base))
+        rooms = Labels(QRectF(2.0, base, self.width() - RIGHT_AXIS + 40.0, RULER))
+        entries = [(placed_element(roll, each.index), float(path.developed[each.sample])) for each in arrivals(path)]
+        marked = [(element, self.point(s, 0.0).x()) for element, s in entries if element is not None]
+        chosen = self.workspace.selection
+        for element, x in sorted(marked, key=lambda pair: pair[0].id not in chosen):
+            selected = element.id in chosen
+            painter.setPen(pen(self.theme.colour("accent" if selected else "soft"), 1.5 if selected else 1.0))
+            painter.drawLine(QPointF(x, base - 5.0), QPointF(x, base + 5.0))
+            ink = small_ink(self.theme, self.font(), "accent" if selected else "soft", bold=selected)
+            size = text_size(ink.font, element.title)
+            at = rooms.place(size, [QPointF(x + 4.0, base + 5.0)])
+            box = QRectF(at, QPointF(at.x() + size[0], at.y() + size[1])) if at is not None else QRectF()
+            self.names.append(Name(element.id, element.title, x, box))
+            if at is not None:
+                draw_text(painter, at, element.title, ink)
+
+    def _paint_findings(self, painter: QPainter, labels: Labels, path: BallPath) -> None:
+        """Marks of the findings on the track line, words beside all but notes."""
+        roll = self.workspace.roll
+        if roll is None or not self.workspace.current:
+            return
+        found = [(finding, finding_sample(finding, path, roll.layout)) for finding in shown_findings(roll.findings)]
+        places = [
+            (finding, self.point(float(path.developed[sample]), float(path.place[sample, 2])))
+            for finding, sample in found
+            if sample is not None
+        ]
+        inside = [(finding, at) for finding, at in places if 0.0 < at.x() < self.width() - RIGHT_AXIS]
+        for finding, at in reversed(inside):
+            draw_finding(painter, finding, at, self.theme)
+            labels.take(QRectF(at.x() - 0.5 * MARK, at.y() - 0.5 * MARK, MARK, MARK))
+        ink = small_ink(self.theme, self.font(), "ink")
+        for finding, at in inside:
+            if finding.severity.value != "note":
+                words = finding_title(self.workspace, finding).split(":")[0].lower()
+                write_about(painter, labels, at, words, ink, MARK)
+
+    def _write_head(self, painter: QPainter, labels: Labels, head: Array) -> None:
+        """Name of the head line, above it where there is room."""
+        ink = small_ink(self.theme, self.font(), "second", bold=True)
+        size = text_size(ink.font, "head line")
+        corners = []
+        for share in (0.62, 0.75, 0.5, 0.38, 0.25, 0.88, 0.12):
+            x = float(head[0, 0] + share * (head[-1, 0] - head[0, 0]))
+            y = float(np.interp(x, head[:, 0], head[:, 1]))
+            corners += [QPointF(x, y - size[1] - 5.0)]
+        at = labels.place(size, corners)
+        if at is not None:
+            draw_text(painter, at, "head line", ink)
+
+    def _write_losses(self, painter: QPainter, path: BallPath) -> None:
+        """Head lost and to what, and the exaggeration of heights, in the upper right corner."""
+        total, shares = losses_of(path)
+        units = self.workspace.design.units
+        parts = ", ".join(f"{CAUSES[cause]} {100.0 * share:.0f} %" for cause, share in shares)
+        lost = f"lost {length_words(total, units)} {units} of head: {parts}" if shares else ""
+        ink = small_ink(self.theme, self.font(), "second")
+        scale = f"heights × {self.exaggeration:.2g}"
+        soft = small_ink(self.theme, self.font())
+        right = self.width() - 12.0
+        width, height = text_size(soft.font, scale)
+        draw_text(painter, QPointF(right - width, 10.0), scale, soft)
+        room = right - width - 18.0 - 190.0
+        lost = lost if text_size(ink.font, lost)[0] <= room else lost.split(":")[0]
+        if text_size(ink.font, lost)[0] <= room:
+            draw_text(painter, QPointF(right - width - 18.0 - text_size(ink.font, lost)[0], 10.0), lost, ink)
+
+    # -- time -------------------------------------------------------------------------------------
+    def paint_moving(self, painter: QPainter) -> None:
+        """Paint the time cursor with its readout and the ball."""
+        path = self._path
+        if path is None:
+            return
+        moment = moment_at(path, self.workspace.time)
+        at = self.point(moment.developed, float(moment.place[2]))
+        painter.setPen(pen(self.theme.colour("accent"), 1.25))
+        painter.drawLine(QPointF(at.x(), 32.0), QPointF(at.x(), self.height() - RULER + 5.0))
+        draw_ball(painter, at, 4.0, self.theme)
+        lines = [
+            f"{moment.t:.2f} s   {moment.speed:.2f} m/s",
+            f"wall angle {math.degrees(moment.angle):.0f}°   load {moment.load:.1f} g".replace("-", "\u2212"),
+        ]
+        if path.regime[moment.sample] == int(Regime.FLIGHT):
+            lines[1] = "in flight"
+        self._paint_readout(painter, at, lines)
+
+    def _paint_readout(self, painter: QPainter, at: QPointF, lines: list[str]) -> None:
+        """Box with figures beside the cursor, on the side and at the height where it covers least."""
+        first = Ink(self.theme.colour("ink"), font_of(self.font(), USUAL, bold=True))
+        second = small_ink(self.theme, self.font(), halo=False)
+        sizes = [text_size(ink.font, text) for ink, text in zip((first, second), lines, strict=True)]
+        width, height = max(size[0] for size in sizes) + 20.0, sizes[0][1] + sizes[1][1] + 14.0
+        left = at.x() + READOUT_GAP
+        if left + width > self.width() - RIGHT_AXIS:
+            left = at.x() - READOUT_GAP - width
+        top = self.height() - RULER - 10.0 - height if at.y() < 0.5 * self.height() else 36.0
+        box = QRectF(round(left) + 0.5, round(top) + 0.5, round(width), round(height))
+        painter.setPen(pen(self.theme.colour("line")))
+        painter.setBrush(self.theme.colour("panel"))
+        painter.drawRoundedRect(box, 3.0, 3.0)
+        draw_text(painter, box.topLeft() + QPointF(10.0, 6.0), lines[0], first)
+        draw_text(painter, box.topLeft() + QPointF(10.0, 8.0 + sizes[0][1]), lines[1], second)
+
+    def name_at(self, at: QPointF) -> str:
+        """Id of the element whose name or tick is at a place of the screen; empty for none."""
+        if at.y() < self.height() - RULER - 2.0:
+            return ""
+        for name in self.names:
+            if name.box.adjusted(-3, -3, 3, 3).contains(at) or abs(at.x() - name.x) <= 4.0:
+                return name.element
+        return ""
+
+    def take_hold(self, at: QPointF) -> bool:
+        """Scrub, unless a name was pressed."""
+        if self._path is None or self.name_at(at):
+            return False
+        self.dragged(at)
+        return True
+
+    def dragged(self, at: QPointF) -> None:
+        """Move the time cursor to the way travelled under the pointer."""
+        if self._path is not None:
+            self.workspace.set_time(time_at(self._path, float(self.to_world(at)[0])))
+
+    def clicked(self, at: QPointF) -> None:
+        """Select the element whose name was clicked."""
+        found = self.name_at(at)
+        if found:
+            self.workspace.select((found,))
+
+    def hovered(self, at: QPointF) -> None:
+        """Tell the name of an element at its tick."""
+        found = self.name_at(at)
+        element = self.workspace.element(found) if found else None
+        self.setToolTip(element.title if element is not None else "")
+        self.setCursor(Qt.CursorShape.PointingHandCursor if found else Qt.CursorShape.ArrowCursor)
+
+    def keyPressEvent(self, event: QKeyEvent) -> None:
+        """Step through time with the arrow keys; the rest as on every sheet."""
+        steps = {Qt.Key.Key_Left: -TIME_STEP, Qt.Key.Key_Right: TIME_STEP}
+        if event.key() in steps and not event.modifiers() & Qt.KeyboardModifier.ControlModifier:
+            big = 10.0 if event.modifiers() & Qt.KeyboardModifier.ShiftModifier else 1.0
+            self.workspace.set_time(self.workspace.time + big * steps[Qt.Key(event.key())])
+        else:
+            super().keyPressEvent(event)
