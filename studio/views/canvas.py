@@ -253,7 +253,7 @@ class Canvas(QWidget):
         self.pan(at.x() - self._last.x(), at.y() - self._last.y())
 
     def keyPressEvent(self, event: QKeyEvent) -> None:
-        """Zoom with + and -, move with the arrows, fit with Home; Space held down moves the view with the left button."""
+        """Zoom with Page Up and Down or Ctrl and + or -, move with the arrows, fit with Home; Space and a drag move the view."""
         key, middle = event.key(), QPointF(self.rect().center())
         pans = {
             Qt.Key.Key_Left: (KEY_PAN, 0.0),
@@ -261,8 +261,10 @@ class Canvas(QWidget):
             Qt.Key.Key_Up: (0.0, KEY_PAN),
             Qt.Key.Key_Down: (0.0, -KEY_PAN),
         }
-        if key in (Qt.Key.Key_Plus, Qt.Key.Key_Equal, Qt.Key.Key_Minus):
-            self.zoom(1.0 / KEY_ZOOM if key == Qt.Key.Key_Minus else KEY_ZOOM, middle)
+        if key in (Qt.Key.Key_PageUp, Qt.Key.Key_Plus, Qt.Key.Key_Equal):
+            self.zoom(KEY_ZOOM, middle)
+        elif key in (Qt.Key.Key_PageDown, Qt.Key.Key_Minus):
+            self.zoom(1.0 / KEY_ZOOM, middle)
         elif key in pans and event.modifiers() in (Qt.KeyboardModifier.NoModifier, Qt.KeyboardModifier.KeypadModifier):
             self.pan(*pans[Qt.Key(key)])
         elif key == Qt.Key.Key_Home and not event.modifiers():
