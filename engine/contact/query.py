@@ -251,6 +251,15 @@ def is_inside(walls, patch, foot):
 
 
 @kernel
+def side_beyond(walls, patch, foot):
+    """Return the first boundary of its patch that a foot lies beyond, -1 when it is inside."""
+    for side in range(6):
+        if boundary(walls, patch, foot, side) < 0.0:
+            return side
+    return -1
+
+
+@kernel
 def box_distance(walls, patch, point):
     """Return the distance from a point to the bounds of a patch, m (0 inside)."""
     square = 0.0
@@ -282,8 +291,11 @@ def is_full_tube(walls, patch):
 
 
 @kernel
-def nearest_wall(walls, point, r, active):
-    """Find the wall that the ball touches next, other than `active` and what is linked to it.
+def nearest_wall(walls, y, r, active, left):
+    """Find the wall that a ball in state `y` touches next, other than `active` and what is linked to it.
+
+    A wall within the ball counts only while the ball closes on it: one it is leaving must not hide another. Nor does one count
+    that the mouth of `left`, the wall it was on last, leads through.
 
     Returns
     -------
@@ -296,6 +308,7 @@ def nearest_wall(walls, point, r, active):
         has passed by more than r is not there until the ball comes round.
     """
     best, found, free = FAR, -1, FAR
+    point = (y[0], y[1], y[2])
     for patch in range(walls.kind.shape[0]):
         if patch == active or is_linked(walls, active, patch):
             continue
@@ -303,15 +316,27 @@ def nearest_wall(walls, point, r, active):
         if off > max(free, 0.0):
             continue
         foot = foot_on(walls, patch, point, r, ANYWHERE)
+        if foot.gap < 0.0 and leads_through(walls, left, patch):
+            free = min(free, max(off, 0.0))
+            continue
         if foot.gap > -r and is_inside(walls, patch, foot):
             free = min(free, foot.gap)
-            if foot.gap < best:
+            closing = y[3] * foot.nx + y[4] * foot.ny + y[5] * foot.nz < 0.0
+            if foot.gap < best and (foot.gap >= 0.0 or closing):
                 best, found = foot.gap, patch
         elif foot.gap < 0.0 and is_full_tube(walls, patch):
             free = min(free, max(off, entry_distance(walls, patch, point)))
         else:
             free = min(free, max(off, 0.0))
     return best, found, free
+
+
+@kernel
+def leads_through(walls, left, patch):
+    """Return whether a tube or its edge leads through `patch`: links 4 and 5 of a swept patch name such walls."""
+    if left < 0 or walls.kind[left] == PLANE:
+        return False
+    return walls.link[left, 4] == patch or walls.link[left, 5] == patch
 
 
 @kernel

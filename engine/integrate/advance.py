@@ -4,11 +4,11 @@ import math
 from typing import NamedTuple
 
 from engine.constants import LONGEST_STEP, REACH_SHARE, SHORTEST_STEP
-from engine.contact.query import ANYWHERE, foot_on, nearest_wall
+from engine.contact.query import ANYWHERE, foot_on, nearest_wall, side_beyond
 from engine.dynamics.phases import put_back
 from engine.dynamics.rates import Contact, rates
 from engine.dynamics.state import FLIGHT, STATE
-from engine.integrate.events import any_falls, fill_guards, first_guard, heading_of, locate_touch, still_speed
+from engine.integrate.events import any_falls, fill_guards, first_guard, gap_at, heading_of, locate_touch, still_speed
 from engine.integrate.step import dense_at, fill_dense, next_size, try_step, warm_start
 from engine.integrate.tableau import STAGES
 from engine.kernel import kernel
@@ -57,14 +57,34 @@ def fit_step(walls, ball, mode, work, plan):
 
 
 @kernel
+def touch_of(walls, ball, mode, work, place):
+    """Return (share, patch) of the touch of a wall that the ball is within at a share; `work.trial` gets the state there.
+
+    `place` = (patch, share). Where only the continuation of the wall beyond a boundary is met, what is linked there, a
+    rim say, is met instead.
+    """
+    patch, high = place
+    share = locate_touch(walls, ball, patch, work, high)
+    dense_at(work, share, work.trial)
+    y = work.trial
+    side = side_beyond(walls, patch, foot_on(walls, patch, (y[0], y[1], y[2]), ball.radius, ANYWHERE))
+    beyond = walls.link[patch, side] if side >= 0 else -1
+    if beyond >= 0 and beyond != mode.patch and gap_at(walls, ball, beyond, work, high) < 0.0:
+        patch = beyond
+        share = locate_touch(walls, ball, patch, work, high)
+        dense_at(work, share, work.trial)
+    return share, patch
+
+
+@kernel
 def meet_wall(walls, ball, mode, work, plan):
     """Return (theta, patch, free way, extended) of the first wall met in the step just made.
 
-    `plan` = (h, tolerance, piece, q, extended): the continuous extension is filled when a wall lies within the ball.
+    `plan` = (h, tolerance, piece, q, extended, wall left last): the continuous extension is filled when a wall lies within the ball.
     """
     y1, r = work.y1, ball.radius
-    h, tolerance, piece, q, extended = plan
-    gap, patch, way = nearest_wall(walls, (y1[0], y1[1], y1[2]), r, mode.patch)
+    h, tolerance, piece, q, extended, left = plan
+    gap, patch, way = nearest_wall(walls, y1, r, mode.patch, left)
     if patch < 0 or gap >= 0.0:
         return NOTHING, -1, way, extended
     if not extended:
@@ -73,14 +93,8 @@ def meet_wall(walls, ball, mode, work, plan):
     for _ in range(4):
         if patch < 0 or gap >= (0.0 if met < 0 else -TOUCHING) or patch == met:
             break
-        share = locate_touch(walls, ball, patch, work, min(theta, 1.0))
-        dense_at(work, share, work.trial)
-        y = work.trial
-        foot = foot_on(walls, patch, (y[0], y[1], y[2]), r, ANYWHERE)
-        if y[3] * foot.nx + y[4] * foot.ny + y[5] * foot.nz >= 0.0:
-            break
-        theta, met = share, patch
-        gap, patch, way = nearest_wall(walls, (y[0], y[1], y[2]), r, mode.patch)
+        theta, met = touch_of(walls, ball, mode, work, (patch, min(theta, 1.0)))
+        gap, patch, way = nearest_wall(walls, work.trial, r, mode.patch)
     return theta, met, (way if met < 0 else 0.0), True
 
 
@@ -97,14 +111,14 @@ def longest(mode, y, free, reach):
 def advance(walls, ball, mode, work, plan):
     """Make one step from `work.y0` to `work.y1` and find the first event in it.
 
-    `plan` = (h wished, time left, way free of other walls, Contact at the start, tolerance).
+    `plan` = (h wished, time to the end, way free of other walls, Contact at the start, tolerance, wall the ball was on last).
     """
-    h, left, free, contact, tolerance = plan
+    h, span, free, contact, tolerance, left = plan
     y = work.y0
     piece, q = warm_start(walls, mode, contact.foot)
     heading = heading_of(contact, ball, still_speed(tolerance, speed_of(y), ball.radius))
     fill_guards(walls, ball, mode, contact, heading, work.before)
-    h = min(h, left, longest(mode, y, free, REACH_SHARE * ball.radius))
+    h = min(h, span, longest(mode, y, free, REACH_SHARE * ball.radius))
     h, h_next, contact = fit_step(walls, ball, mode, work, (h, tolerance, piece, q))
     fill_guards(walls, ball, mode, contact, heading, work.after)
     theta, slot, met, extended = NOTHING, -1, -1, False
@@ -114,7 +128,7 @@ def advance(walls, ball, mode, work, plan):
         theta, slot = first_guard(walls, ball, mode, work, (heading, piece, q))
     free -= 1.01 * h * max(speed_of(y), speed_of(work.y1)) + TOUCHING
     if free < 0.0:
-        share, wall, free, extended = meet_wall(walls, ball, mode, work, (h, tolerance, piece, q, extended))
+        share, wall, free, extended = meet_wall(walls, ball, mode, work, (h, tolerance, piece, q, extended, left))
         if share < theta:
             theta, met = share, wall
     return Step(h, h_next, contact, theta, slot, met, free, piece, q, extended)

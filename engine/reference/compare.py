@@ -83,8 +83,8 @@ def compare(case: Case) -> CaseResult:
         else:
             result.notes.append("Not run: closed forms or library values without a run of their own.")
             return result
-    except TrundleError as error:
-        result.faults.append(f"The case cannot be rolled: {error}.")
+    except (TrundleError, ValueError, ArithmeticError, LookupError) as error:
+        result.faults.append(f"The case cannot be rolled: {str(error) or type(error).__name__}.")
     result.ok = not result.faults
     return result
 

@@ -280,4 +280,8 @@ def own_number(run: CaseRun, name: str, given: object) -> float | bool | None:
         return None
     if run.case.is_knife_edge and name in HINGED_ON_EDGE:
         return None
-    return find(run)
+    try:
+        return find(run)
+    except (LookupError, ValueError):
+        # the run left no rows to read it from
+        return math.nan
