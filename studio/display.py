@@ -231,6 +231,14 @@ def thinned(points: Array, step: float, keys: Indices) -> Indices:
     return np.flatnonzero(kept)
 
 
+def spaced(along: Array, step: float) -> Indices:
+    """Rows to keep so that their lengths along a line (n,) are about `step` apart, both ends among them."""
+    bins = np.floor(along / step)
+    kept = np.ones(len(along), dtype=bool)
+    kept[1:-1] = bins[1:-1] != bins[:-2]
+    return np.flatnonzero(kept)
+
+
 def runs_of(keys: Indices) -> list[tuple[int, int]]:
     """Stretches [first, last] of one key each; each ends on the first row of the next, so that no gap is left."""
     changes = np.flatnonzero(np.diff(keys)) + 1

@@ -1,282 +1,264 @@
-"""Light surfaces of the elements for a quick look in space, with exact normals; arrays only, no Qt.
+"""Elements in space as triangles to look at: coarse, with analytic normals, kept per element until it changes or moves.
 
-What is made for files (`engine.fabrication`) is exact and closed; here a tube is its outside only, a vessel its running
-surface, and the steps are as coarse as the eye allows.
+Made for the eye only: a tube is its outer face, a vessel its inner face. Parts for the bench: `engine.fabrication`.
 """
 
 import math
-from collections.abc import Sequence
+from functools import lru_cache
 from typing import NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
 
-from engine.errors import PartRefusedError
-from engine.fabrication.solid import build_solid
-from engine.geometry.tables import D1, DOWN, R
-from engine.model.design import Process
+from engine.geometry.tables import down_at, interpolate
 from engine.model.elements import SegmentBase, Trough
-from engine.placement import Layout, Placed
-from studio.display import Array
+from engine.placement import Placed
+from studio.display import LEVELS, BallPath, levels_of
+from studio.strips import KEPT, Shape, frame_of, profile_points, rings_of, slab_of, stations
 
-Floats = NDArray[np.float32]
-Triangles = NDArray[np.uint32]
+Array = NDArray[np.float64]
+Single = NDArray[np.float32]
+Corners = NDArray[np.uint32]
 
-STATION_TURN = 0.15
-"""rad. Rings of a tube stand this far apart along a bend."""
-RING_SIDES, TROUGH_SIDES, VESSEL_SIDES = 16, 12, 48
-MERIDIAN_ROWS = 28
-CACHE_SIZE = 4000
-
-
-class Surface(NamedTuple):
-    """Triangles with a normal at each corner.
-
-    `vertices`, `normals` (n, 3) float32, m; `faces` (m, 3) uint32; `clear` whether one looks through it.
-    """
-
-    vertices: Floats
-    normals: Floats
-    faces: Triangles
-    clear: bool
-
-
-class Shape(NamedTuple):
-    """An element in space: surfaces, and lines (k, 2, 3) float32 of its rims."""
-
-    surfaces: tuple[Surface, ...]
-    rims: Floats
+SIDES = 14
+"""Faces round a tube."""
+ARC_SIDES = 10
+"""Faces along the inner and the outer arc of a trough."""
+STATION_TURN = 0.16
+"""rad between cross sections in a bend."""
+STATION_SPACING = 0.2
+"""m between cross sections of a straight piece (a banked one twists between them)."""
+VESSEL_SIDES = 48
+BALL_RINGS, BALL_SIDES = 14, 24
+BAND = 0.24
+"""Half width of the light band round the ball, over its radius: it shows how the ball turns."""
+PATH_SIDES = 5
+PATH_STEP = 0.0025
+"""m between drawn points of the path, so that a long roll stays light to draw."""
+HIT_MARGIN = 1e-9
 
 
-class Stage(NamedTuple):
-    """Everything to show: one opaque and one clear surface, the element (index in the layout) of each corner, rims."""
+class Mesh(NamedTuple):
+    """Triangles: vertices and unit normals (n, 3), corners (m, 3); lines (k, 3), two points for each."""
 
-    solid: Surface
-    solid_element: NDArray[np.int64]
-    clear: Surface
-    clear_element: NDArray[np.int64]
-    rims: Floats
-    rim_element: NDArray[np.int64]
+    vertices: Single
+    normals: Single
+    faces: Corners
+    lines: Single
 
 
-NOTHING = Surface(np.zeros((0, 3), np.float32), np.zeros((0, 3), np.float32), np.zeros((0, 3), np.uint32), False)
+class Solid(NamedTuple):
+    """Mesh of one placed element; `kind`: tube, trough, vessel or plate."""
+
+    element: int
+    kind: str
+    mesh: Mesh
 
 
-class Meshes:
-    """Shapes of elements, kept while neither they nor their places change."""
-
-    def __init__(self) -> None:
-        self._kept: dict[tuple[object, ...], Shape] = {}
-        self.made = 0
-
-    def shape(self, entry: Placed, process: Process) -> Shape:
-        """Shape of one element."""
-        key = (entry.element, process, entry.bore, *_numbers(entry))
-        if key not in self._kept:
-            if len(self._kept) > CACHE_SIZE:
-                self._kept.clear()
-            self._kept[key] = shape_of(entry, process)
-            self.made += 1
-        return self._kept[key]
-
-    def stage(self, layout: Layout) -> Stage:
-        """All shapes of a layout in one."""
-        shapes = [(entry.index, self.shape(entry, layout.design.process)) for entry in layout.placed]
-        pairs = [(index, surface) for index, shape in shapes for surface in shape.surfaces]
-        solid, solid_element = merged([pair for pair in pairs if not pair[1].clear])
-        clear, clear_element = merged([pair for pair in pairs if pair[1].clear])
-        rims = [shape.rims for _, shape in shapes]
-        counts = [len(part) for part in rims]
-        return Stage(
-            solid,
-            solid_element,
-            clear,
-            clear_element,
-            np.concatenate(rims) if rims else np.zeros((0, 2, 3), np.float32),
-            np.repeat(np.array([index for index, _ in shapes], dtype=np.int64), counts),
-        )
+def solid_of(placed: Placed) -> Solid | None:
+    """Mesh of an element, kept from last time when neither it nor its place has changed; None for a free jump."""
+    shape = Shape(placed)
+    if placed.curve is not None and isinstance(placed.element, SegmentBase):
+        trough = isinstance(placed.element.section, Trough)
+        return Solid(placed.index, "trough" if trough else "tube", segment_mesh(shape))
+    if placed.meridian is not None:
+        return Solid(placed.index, "vessel", vessel_mesh(shape))
+    return Solid(placed.index, "plate", plate_mesh(shape)) if placed.plate is not None else None
 
 
-def _numbers(entry: Placed) -> tuple[bytes, ...]:
-    """Where an element stands, as a key."""
-    inlet = entry.inlet
-    arrays = (inlet.position, inlet.tangent, inlet.down, entry.origin, entry.axis)
-    return tuple(array.tobytes() for array in arrays if array is not None)
+# -- segments -------------------------------------------------------------------------------------
+class Arc(NamedTuple):
+    """Part of a cross section: radius (m), wall angles (k,), +1 for a face that looks outward, -1 inward."""
+
+    radius: float
+    angles: Array
+    outward: float
 
 
-def merged(parts: Sequence[tuple[int, Surface]]) -> tuple[Surface, NDArray[np.int64]]:
-    """Surfaces in one, and the element of each of its corners."""
-    if not parts:
-        return NOTHING, np.zeros(0, dtype=np.int64)
-    surfaces = [surface for _, surface in parts]
-    counts = np.array([len(surface.vertices) for surface in surfaces])
-    starts = np.concatenate([[0], np.cumsum(counts)[:-1]])
-    faces = [surface.faces + np.uint32(start) for surface, start in zip(surfaces, starts, strict=True)]
-    whole = Surface(
-        np.concatenate([surface.vertices for surface in surfaces]),
-        np.concatenate([surface.normals for surface in surfaces]),
-        np.concatenate(faces),
-        surfaces[0].clear,
-    )
-    return whole, np.repeat(np.array([index for index, _ in parts], dtype=np.int64), counts)
-
-
-# -- elements -------------------------------------------------------------------------------------
-def shape_of(entry: Placed, process: Process) -> Shape:
-    """Shape of one element where it stands."""
-    if entry.curve is not None and isinstance(entry.element, SegmentBase):
-        return _track(entry.curve, entry.element)
-    if entry.meridian is not None:
-        return _vessel(entry)
-    if entry.plate is not None:
-        return _plate(entry, process)
-    return Shape((), np.zeros((0, 2, 3), np.float32))
-
-
-def stations(curve: Array) -> Array:
-    """Rows of a curve table no further apart than can be seen."""
-    turn = np.sqrt((np.diff(curve[:, D1], axis=0) ** 2).sum(axis=1))
-    bins = np.floor(np.concatenate([[0.0], np.cumsum(turn)]) / STATION_TURN)
-    kept = np.concatenate([[True], bins[1:] != bins[:-1]])
-    kept[-1] = True
-    return curve[kept]
-
-
-def _track(curve: Array, element: SegmentBase) -> Shape:
-    rows, section = stations(curve), element.section
-    inside, outside = 0.5 * section.bore, 0.5 * section.bore + section.wall
+@lru_cache(maxsize=KEPT)
+def segment_mesh(shape: Shape) -> Mesh:
+    """Sweep of the cross section along the centreline."""
+    placed = shape.placed
+    element, table = placed.element, placed.curve
+    assert isinstance(element, SegmentBase) and table is not None
+    s = stations(table, STATION_SPACING, STATION_TURN)
+    centre, tangent, _ = interpolate(table, s)
+    down = down_at(table, s)
+    side = np.cross(tangent / np.sqrt((tangent**2).sum(axis=1, keepdims=True)), down)
+    section = element.section
+    inner, outer = 0.5 * section.bore, 0.5 * section.bore + section.wall
     if isinstance(section, Trough):
-        reach = section.lip_angle
-        turn = np.linspace(-reach, reach, TROUGH_SIDES + 1)
-        inner, outer = _swept(rows, inside, turn, -1.0), _swept(rows, outside, turn, 1.0)
-        lips = tuple(_lip(rows, (inside, outside), sense * reach, sense) for sense in (-1.0, 1.0))
-        ends = [_arc(rows[place], radius, turn) for place in (0, -1) for radius in (inside, outside)]
-        return Shape((inner, outer, *lips), polylines(ends))
-    turn = np.linspace(0.0, 2.0 * math.pi, RING_SIDES + 1)
-    ends = [_arc(rows[place], radius, turn) for place in (0, -1) for radius in (inside, outside)]
-    return Shape((_swept(rows, outside, turn, 1.0)._replace(clear=True),), polylines(ends))
+        angles = np.linspace(-section.lip_angle, section.lip_angle, ARC_SIDES + 1)
+        arcs = [Arc(inner, angles, -1.0), Arc(outer, angles, 1.0)]
+    else:
+        arcs = [Arc(outer, np.linspace(-math.pi, math.pi, SIDES + 1), 1.0)]
+    sheets = [_sheet(centre, down, side, arc) for arc in arcs]
+    points = [sheet[0] for sheet in sheets]
+    grids = [grid(vertices, normals) for vertices, normals in sheets]
+    if isinstance(section, Trough):
+        grids += [_lip(points[0][:, edge], points[1][:, edge], tangent) for edge in (0, -1)]
+    return joined(grids, _section_lines(points, isinstance(section, Trough)))
 
 
-def _spokes(rows: Array, turn: Array) -> Array:
-    """Unit vectors (n, k, 3) from the centreline at wall angles (k,)."""
-    down, side = rows[:, DOWN], np.cross(rows[:, D1], rows[:, DOWN])
-    return np.asarray(np.cos(turn)[None, :, None] * down[:, None] + np.sin(turn)[None, :, None] * side[:, None])
+def _sheet(centre: Array, down: Array, side: Array, arc: Arc) -> tuple[Array, Array]:
+    """Vertices and normals (n, k, 3): r(s) + a (cos phi d + sin phi side), normal along the spoke (exact)."""
+    spoke = np.cos(arc.angles)[:, None] * down[:, None, :] + np.sin(arc.angles)[:, None] * side[:, None, :]
+    return centre[:, None, :] + arc.radius * spoke, arc.outward * spoke
 
 
-def _swept(rows: Array, radius: float, turn: Array, sense: float) -> Surface:
-    """Part of a tube of one radius between wall angles; normals away from (+1) or toward (-1) the centreline."""
-    spokes = _spokes(rows, turn)
-    return grid(rows[:, None, R] + radius * spokes, sense * spokes, flip=sense < 0.0)
+def _lip(inner: Array, outer: Array, tangent: Array) -> tuple[Array, Array, Corners]:
+    """Flat face (n, 2) between inner and outer edge of a trough."""
+    vertices = np.stack([inner, outer], axis=1)
+    normal = np.cross(tangent, outer - inner)
+    normal /= np.maximum(np.sqrt((normal**2).sum(axis=1, keepdims=True)), 1e-12)
+    return grid(vertices, np.stack([normal, normal], axis=1))
 
 
-def _lip(rows: Array, radii: tuple[float, float], angle: float, sense: float) -> Surface:
-    """Edge of a trough."""
-    spokes = _spokes(rows, np.array([angle]))
-    points = rows[:, None, R] + np.array(radii)[None, :, None] * spokes
-    across = sense * _spokes(rows, np.array([angle + 0.5 * math.pi]))
-    return grid(points, np.broadcast_to(across, points.shape), flip=sense > 0.0)
+def _section_lines(points: list[Array], trough: bool) -> Array:
+    """Outline at both ends; of a trough also its edges."""
+    found = [pairs(rows[end]) for rows in points for end in (0, -1)]
+    if trough:
+        found += [pairs(rows[:, edge]) for rows in points for edge in (0, -1)]
+        found += [np.stack([points[0][end, edge], points[1][end, edge]]) for end in (0, -1) for edge in (0, -1)]
+    return np.concatenate(found)
 
 
-def _arc(row: Array, radius: float, turn: Array) -> Array:
-    return np.asarray(row[R] + radius * _spokes(row[None], turn)[0])
+# -- vessels, plates, ball ------------------------------------------------------------------------
+@lru_cache(maxsize=KEPT)
+def vessel_mesh(shape: Shape) -> Mesh:
+    """Meridian turned round its axis; normal (-z', rho') of the meridian carried round."""
+    placed = shape.placed
+    assert placed.meridian is not None and placed.origin is not None and placed.axis is not None
+    profile = profile_points(placed.meridian)
+    rows = np.searchsorted(placed.meridian[:, 0], _lengths(placed.meridian, profile))
+    slope = placed.meridian[np.minimum(rows, len(placed.meridian) - 1), 3:5]
+    turn = np.linspace(0.0, 2.0 * math.pi, VESSEL_SIDES + 1)
+    first, second = frame_of(placed.axis)
+    around = np.cos(turn)[:, None] * first + np.sin(turn)[:, None] * second
+    vertices = placed.origin + profile[:, 0, None, None] * around + (profile[:, 1, None] * placed.axis)[:, None, :]
+    normals = -slope[:, 1, None, None] * around + (slope[:, 0, None] * placed.axis)[:, None, :]
+    circles = rings_of(shape).circles
+    ends = [np.concatenate([circles[end], circles[end][:1]]) for end in (0, -1)]
+    return joined([grid(vertices, normals)], np.concatenate([pairs(line) for line in ends]))
 
 
-def _vessel(entry: Placed) -> Shape:
-    """Running surface of a vessel, looked through, with its rim and throat as lines."""
-    meridian, origin, axis = entry.meridian, entry.origin, entry.axis
-    if meridian is None or origin is None or axis is None:
-        raise TypeError("only a vessel has a meridian")
-    rows = meridian[np.unique(np.linspace(0, len(meridian) - 1, MERIDIAN_ROWS).round().astype(np.int64))]
-    rows = rows[np.append(np.diff(rows[:, 0]) > 0.0, True)]
-    first, second = _across(axis)
-    azimuth = np.linspace(0.0, 2.0 * math.pi, VESSEL_SIDES + 1)
-    circle = np.outer(np.cos(azimuth), first) + np.outer(np.sin(azimuth), second)
-    points = origin + rows[:, None, 1:2] * circle[None] + rows[:, None, 2:3] * axis
-    normals = entry.side * (-rows[:, None, 4:5] * circle[None] + rows[:, None, 3:4] * axis)
-    surface = grid(points, normals, flip=entry.side > 0)._replace(clear=True)
-    rims = [points[place] for place in (0, -1) if rows[place, 1] > 1e-6]
-    return Shape((surface,), polylines(rims))
+def _lengths(meridian: Array, profile: Array) -> Array:
+    """Profile length of points that are rows of the meridian."""
+    away = np.abs(meridian[None, :, 1:3] - profile[:, None, :]).sum(axis=2)
+    return np.asarray(meridian[away.argmin(axis=1), 0])
 
 
-def _across(axis: Array) -> tuple[Array, Array]:
-    """Two unit vectors (3,) across an axis."""
-    reference = np.array([0.0, 0.0, 1.0]) if abs(axis[2]) < 0.9 else np.array([1.0, 0.0, 0.0])
-    first = np.cross(axis, reference)
-    first = first / math.sqrt(first @ first)
-    return first, np.cross(axis, first)
+@lru_cache(maxsize=KEPT)
+def plate_mesh(shape: Shape) -> Mesh:
+    """Deck as a plate of its thickness; tray as a floor with four walls."""
+    slab, axis = slab_of(shape.placed), shape.placed.axis
+    assert axis is not None
+    top = slab.corners
+    other = top + slab.depth * axis
+    walls = [np.stack([top[[i, (i + 1) % 4]], other[[i, (i + 1) % 4]]]) for i in range(4)]
+    floors = [np.stack([top[[0, 1]], top[[3, 2]]])]
+    if slab.depth < 0.0:
+        floors.append(np.stack([other[[0, 1]], other[[3, 2]]]))
+    grids = []
+    for face in floors + walls:
+        normal = np.cross(face[0, 1] - face[0, 0], face[1, 0] - face[0, 0])
+        normal /= max(math.sqrt(float(normal @ normal)), 1e-12)
+        grids.append(grid(face, np.broadcast_to(normal, face.shape)))
+    loops = [pairs(np.concatenate([line, line[:1]])) for line in (top, other)]
+    return joined(grids, np.concatenate([*loops, np.stack([top, other], axis=1).reshape(-1, 3)]))
 
 
-def _plate(entry: Placed, process: Process) -> Shape:
-    """Deck or tray, flat faces; what cannot be made is not shown."""
-    try:
-        mesh = build_solid(entry, process, coarse=True)
-    except PartRefusedError:
-        return Shape((), np.zeros((0, 2, 3), np.float32))
-    corners = mesh.vertices[mesh.faces]
-    normal = np.cross(corners[:, 1] - corners[:, 0], corners[:, 2] - corners[:, 0])
-    normal /= np.maximum(np.sqrt((normal * normal).sum(axis=1)), 1e-30)[:, None]
-    flat = np.repeat(normal, 3, axis=0)
-    faces = np.arange(3 * len(corners), dtype=np.uint32).reshape(-1, 3)
-    surface = Surface(corners.reshape(-1, 3).astype(np.float32), flat.astype(np.float32), faces, False)
-    plate = entry.plate
-    if plate is None:
-        return Shape((surface,), np.zeros((0, 2, 3), np.float32))
-    half, far = 0.5 * plate.width * plate.left, plate.length * plate.along
-    near = plate.origin
-    return Shape((surface,), polylines([np.stack([near - half, near + half, near + far + half, near + far - half, near - half])]))
+def ball_mesh() -> tuple[Mesh, NDArray[np.bool_]]:
+    """Unit ball, and which vertices lie on its light band (about the x axis) or on its two caps."""
+    polar = np.linspace(0.0, math.pi, BALL_RINGS + 1)
+    polar = np.sort(np.concatenate([polar, *(np.arccos([c, c * 0.999, -c, -c * 0.999]) for c in (BAND, 0.93))]))
+    turn = np.linspace(0.0, 2.0 * math.pi, BALL_SIDES + 1)
+    height = np.cos(polar)
+    ring = np.sin(polar)
+    x = np.broadcast_to(height[:, None], (len(polar), len(turn)))
+    vertices = np.stack([x, ring[:, None] * np.cos(turn), ring[:, None] * np.sin(turn)], axis=2)
+    light = (np.abs(x) <= BAND * 0.9995) | (np.abs(x) >= 0.93)
+    return joined([grid(vertices, vertices)], np.zeros((0, 3))), light.ravel()
 
 
-# -- pieces ---------------------------------------------------------------------------------------
-def grid(points: Array, normals: Array, *, flip: bool = False) -> Surface:
-    """Surface through a grid of points (n, k, 3) with normals alike, two triangles a cell."""
-    n, k = points.shape[:2]
-    number = np.arange(n * k, dtype=np.uint32).reshape(n, k)
-    a, b, c, d = number[:-1, :-1], number[:-1, 1:], number[1:, 1:], number[1:, :-1]
-    cells = np.stack([a, b, c, a, c, d], axis=-1).reshape(-1, 3)
-    faces = cells[:, ::-1] if flip else cells
-    return Surface(
-        np.ascontiguousarray(points.reshape(-1, 3), dtype=np.float32),
-        np.ascontiguousarray(normals.reshape(-1, 3), dtype=np.float32),
-        np.ascontiguousarray(faces),
-        False,
-    )
+# -- path -----------------------------------------------------------------------------------------
+class PathMesh(NamedTuple):
+    """Thin tube along the path and the colour level (n,) of each of its vertices."""
+
+    mesh: Mesh
+    level: NDArray[np.int64]
 
 
-def polylines(lines: Sequence[Array]) -> Floats:
-    """Lines as pieces (m, 2, 3)."""
-    pieces = [np.stack([line[:-1], line[1:]], axis=1) for line in lines]
-    return np.concatenate(pieces).astype(np.float32) if pieces else np.zeros((0, 2, 3), np.float32)
+def path_mesh(path: BallPath, radius: float, levels: NDArray[np.int64] | None = None) -> PathMesh:
+    """Tube of some radius along the way of the ball, by colour level (speed when none are given)."""
+    chosen = levels_of(path.speed, path.top_speed, LEVELS) if levels is None else levels
+    bins = np.floor(path.developed / PATH_STEP)
+    keep = np.concatenate([[True], np.diff(bins) != 0])
+    keep[-1] = True
+    points, level = path.place[keep], chosen[keep]
+    distinct = np.concatenate([[True], (np.diff(points, axis=0) ** 2).sum(axis=1) > 1e-14])
+    points, level = points[distinct], level[distinct]
+    if len(points) < 2:
+        return PathMesh(joined([], np.zeros((0, 3))), np.zeros(0, dtype=np.int64))
+    step = np.gradient(points, axis=0)
+    tangent = step / np.maximum(np.sqrt((step**2).sum(axis=1, keepdims=True)), 1e-12)
+    aside = np.cross(tangent, np.array([0.31, 0.47, 0.83]))
+    aside /= np.maximum(np.sqrt((aside**2).sum(axis=1, keepdims=True)), 1e-9)
+    down = np.cross(tangent, aside)
+    vertices, normals = _sheet(points, down, aside, Arc(radius, np.linspace(-math.pi, math.pi, PATH_SIDES + 1), 1.0))
+    mesh = joined([grid(vertices, normals)], np.zeros((0, 3)))
+    return PathMesh(mesh, np.repeat(level, PATH_SIDES + 1))
 
 
-def sphere(rows: int = 14, columns: int = 20) -> tuple[Surface, NDArray[np.bool_]]:
-    """Unit sphere, and which corners are in the dark ones of eight sectors, so that one sees it turn."""
-    polar = np.linspace(0.0, math.pi, rows + 1)[:, None]
-    azimuth = np.linspace(0.0, 2.0 * math.pi, columns + 1)[None]
-    points = np.stack([np.sin(polar) * np.cos(azimuth), np.sin(polar) * np.sin(azimuth), np.cos(polar) + 0.0 * azimuth], -1)
-    corners = points.reshape(-1, 3)
-    sectors = (corners > 1e-9).sum(axis=1) % 2 == 0
-    return grid(points, points), sectors
+# -- triangles ------------------------------------------------------------------------------------
+def grid(vertices: Array, normals: Array) -> tuple[Array, Array, Corners]:
+    """Vertices and normals (n, k, 3) flat, and the two triangles of each cell."""
+    n, k = vertices.shape[:2]
+    place = np.arange(n * k, dtype=np.uint32).reshape(n, k)
+    a, b, c, d = place[:-1, :-1], place[1:, :-1], place[1:, 1:], place[:-1, 1:]
+    faces = np.stack([a, b, c, a, c, d], axis=-1).reshape(-1, 3)
+    return vertices.reshape(-1, 3), normals.reshape(-1, 3), faces
 
 
-def pick(origin: Array, ray: Array, surface: Surface) -> tuple[float, int]:
-    """Distance (m) along a ray to the first triangle it meets and the corner it belongs to; inf and -1 for none.
+def joined(grids: list[tuple[Array, Array, Corners]], lines: Array) -> Mesh:
+    """One mesh of several, triangles turned so that their winding agrees with the normals."""
+    if not grids:
+        empty = np.zeros((0, 3), dtype=np.float32)
+        return Mesh(empty, empty, np.zeros((0, 3), dtype=np.uint32), np.asarray(lines, dtype=np.float32))
+    starts = np.cumsum([0, *(len(vertices) for vertices, _, _ in grids)])
+    vertices = np.concatenate([part[0] for part in grids])
+    normals = np.concatenate([part[1] for part in grids])
+    faces = np.concatenate([part[2] + np.uint32(start) for part, start in zip(grids, starts, strict=False)])
+    a, b, c = (vertices[faces[:, corner]] for corner in range(3))
+    wrong = (np.cross(b - a, c - a) * normals[faces].sum(axis=1)).sum(axis=1) < 0.0
+    faces[wrong] = faces[wrong][:, [0, 2, 1]]
+    return Mesh(vertices.astype(np.float32), normals.astype(np.float32), faces, np.asarray(lines, dtype=np.float32))
 
-    Moeller and Trumbore: solve origin + t ray = a + u (b - a) + v (c - a) for every triangle at once.
+
+def pairs(line: Array) -> Array:
+    """Polyline (n, 3) as separate pieces (2 n - 2, 3)."""
+    return np.stack([line[:-1], line[1:]], axis=1).reshape(-1, 3)
+
+
+def hit(solids: list[Solid], start: Array, ray: Array) -> int | None:
+    """Element first met by a ray (3,) from a point (3,); None when it meets none.
+
+    Distance t and weights u, v of the corner by Möller and Trumbore, Journal of Graphics Tools 2 (1997) 21-28.
     """
-    if len(surface.faces) == 0:
-        return math.inf, -1
-    a, b, c = (surface.vertices[surface.faces[:, corner]].astype(np.float64) for corner in range(3))
-    one, two = b - a, c - a
-    across = np.cross(ray, two)
-    size = (one * across).sum(axis=1)
-    size = np.where(np.abs(size) < 1e-15, np.inf, size)
-    away = origin - a
-    u = (away * across).sum(axis=1) / size
-    turned = np.cross(away, one)
-    v = (turned @ ray) / size
-    t = (two * turned).sum(axis=1) / size
-    met = (u >= 0.0) & (v >= 0.0) & (u + v <= 1.0) & (t > 1e-6)
-    if not met.any():
-        return math.inf, -1
-    nearest = int(np.argmin(np.where(met, t, np.inf)))
-    return float(t[nearest]), int(surface.faces[nearest, 0])
+    nearest, found = math.inf, None
+    for solid in solids:
+        corners = solid.mesh.vertices[solid.mesh.faces].astype(np.float64)
+        a, e1, e2 = corners[:, 0], corners[:, 1] - corners[:, 0], corners[:, 2] - corners[:, 0]
+        p = np.cross(ray, e2)
+        det = (e1 * p).sum(axis=1)
+        scale = np.where(np.abs(det) > 1e-30, 1.0 / np.where(det == 0.0, 1.0, det), np.inf)
+        away = start - a
+        with np.errstate(invalid="ignore"):
+            u = (away * p).sum(axis=1) * scale
+            q = np.cross(away, e1)
+            v = (q * ray).sum(axis=1) * scale
+            t = (q * e2).sum(axis=1) * scale
+            inside = (u >= -HIT_MARGIN) & (v >= -HIT_MARGIN) & (u + v <= 1.0 + HIT_MARGIN) & (t > 0.0)
+        if inside.any() and float(t[inside].min()) < nearest:
+            nearest, found = float(t[inside].min()), solid.element
+    return found

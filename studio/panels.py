@@ -14,11 +14,12 @@ from engine.geometry.tables import D1, DOWN, R
 from engine.model.elements import SegmentBase, Trough
 from engine.placement import Layout, Placed
 from studio.display import Array
-from studio.meshes import stations
 
+STATION_TURN = 0.15
+"""rad. Panels of a bend turn this much."""
 LONGEST = 0.12
 """m. A straight is cut into panels of at most this length, so that sorting by depth works."""
-TROUGH_PANELS, VESSEL_PANELS, VESSEL_ROWS = 4, 32, 7
+TROUGH_PANELS, VESSEL_PANELS, VESSEL_ROWS = 4, 40, 12
 NONE = -1
 
 
@@ -84,6 +85,15 @@ def _parts(entry: Placed) -> list[Panels]:
     if entry.meridian is not None:
         return [_vessel(entry)]
     return [_plate(entry)] if entry.plate is not None else []
+
+
+def stations(curve: Array) -> Array:
+    """Rows of a curve table no further apart than can be seen."""
+    turn = np.sqrt((np.diff(curve[:, D1], axis=0) ** 2).sum(axis=1))
+    bins = np.floor(np.concatenate([[0.0], np.cumsum(turn)]) / STATION_TURN)
+    kept = np.concatenate([[True], bins[1:] != bins[:-1]])
+    kept[-1] = True
+    return curve[kept]
 
 
 def _cut(rows: Array, curve: Array) -> Array:

@@ -21,6 +21,8 @@ ORBIT, KEY_ORBIT = math.radians(0.4), math.radians(6.0)
 """rad a px, rad a key."""
 STEEPEST = math.radians(89.0)
 PATH_WIDTH = 1.8
+SEAM = 0.7
+"""px. Panels are drawn this much larger, so that no paper shows between them."""
 SHADES = 8
 """Steps of light; each has its brushes ready."""
 DOTS = np.concatenate([np.eye(3), -np.eye(3)])
@@ -109,7 +111,7 @@ class IsometricView(Canvas):
     def _paint_panel(self, painter: QPainter, number: int, fill: QColor, edge: Any) -> None:
         """Fill of a panel, and the edges it shows: along the track for tubes, none between panels of a vessel."""
         corners = self._corners[number]
-        painter.setPen(Qt.PenStyle.NoPen)
+        painter.setPen(pen(fill, SEAM))
         painter.setBrush(fill)
         painter.drawPolygon(polygon(corners))
         painter.setPen(edge)
@@ -127,7 +129,7 @@ class IsometricView(Canvas):
             for step in range(SHADES):
                 shade = 0.82 + 0.24 * step / (SHADES - 1)
                 parts = [min(1.0, part * shade) for part in base.getRgbF()[:3]]
-                row.append(QColor.fromRgbF(*parts, 0.86))
+                row.append(QColor.fromRgbF(*parts))
             found.append(row)
         return found
 

@@ -2,8 +2,13 @@
 
 from functools import lru_cache
 
-from PySide6.QtGui import QGuiApplication, QOffscreenSurface, QOpenGLContext
 from pyqtgraph.opengl.shaders import FragmentShader, ShaderProgram, VertexShader
+from PySide6.QtGui import QGuiApplication, QOffscreenSurface, QOpenGLContext
+
+GL_RENDERER = 0x1F01
+"""Name of the renderer, as OpenGL numbers it."""
+LEAST_VERSION = (2, 1)
+SOFTWARE = ("llvmpipe", "softpipe", "swiftshader", "software")
 
 VERTEX = """
 uniform mat4 u_mvp;
@@ -32,12 +37,48 @@ void main() {
     float fill = max(dot(n, vec3(0.70, 0.10, 0.70)), 0.0);
     float gloss = pow(max(dot(n, vec3(-0.24, 0.41, 0.88)), 0.0), 40.0);
     float edge = pow(1.0 - n.z, 2.0);
-    vec3 shade = v_color.rgb * (0.66 + 0.30 * key + 0.10 * fill - 0.22 * edge) + 0.14 * gloss;
-    gl_FragColor = vec4(shade, min(1.0, v_color.a + 0.40 * edge));
+    vec3 shade = v_color.rgb * (0.72 + 0.28 * key + 0.10 * fill - 0.16 * edge) + 0.10 * gloss;
+    float soft = v_color.a < 0.99 ? smoothstep(0.0, 0.22, n.z) : 1.0;
+    gl_FragColor = vec4(shade, soft * min(1.0, v_color.a + 0.55 * edge));
 }
 """
-"""Key light from the upper left, fill from the right, a small gloss; edges turned away are darker and denser, as a draughtsman
-would draw them. Both sides of a surface are lit."""
+"""Key light from the upper left, fill from the right, a small gloss; what one looks through is denser where it turns away, as a
+draughtsman would draw it, and fades at its very edge so that the edge is smooth. Both sides of a surface are lit."""
+
+LINE_VERTEX = """
+uniform mat4 u_mvp;
+uniform float u_view[3];
+attribute vec4 a_position;
+attribute vec3 a_normal;
+attribute vec4 a_color;
+varying vec4 v_color;
+varying vec2 v_line;
+void main() {
+    vec2 half_size = vec2(u_view[0], u_view[1]);
+    vec4 here = u_mvp * a_position;
+    vec4 there = u_mvp * vec4(a_position.xyz + a_normal, 1.0);
+    vec2 step = (there.xy / there.w - here.xy / here.w) * half_size;
+    float size = length(step);
+    vec2 ahead = size > 1e-6 ? step / size : vec2(1.0, 0.0);
+    float side = 2.0 * a_color.a - 1.0;
+    float reach = 0.5 * u_view[2] + 1.0;
+    here.xy += side * reach * vec2(-ahead.y, ahead.x) / half_size * here.w;
+    v_line = vec2(side * reach, 0.5 * u_view[2] + 0.5);
+    v_color = a_color;
+    gl_Position = here;
+}
+"""
+LINE_FRAGMENT = """
+#ifdef GL_ES
+precision mediump float;
+#endif
+varying vec4 v_color;
+varying vec2 v_line;
+void main() {
+    gl_FragColor = vec4(v_color.rgb, clamp(v_line.y - abs(v_line.x), 0.0, 1.0));
+}
+"""
+"""Lines of even width on screen with smooth edges: the normal holds a short step along the line, the opacity the side."""
 
 
 @lru_cache(maxsize=1)
@@ -46,24 +87,35 @@ def shader() -> ShaderProgram:
     return ShaderProgram("trundle", [VertexShader(VERTEX), FragmentShader(FRAGMENT)])
 
 
-def gl_available() -> bool:
-    """Whether OpenGL can be used: never without a screen, else when a context can be made current."""
+@lru_cache(maxsize=4)
+def line_shader(name: str) -> ShaderProgram:
+    """A program with which lines of one width are drawn; `u_view` is half the width and height of the view and the width of a line, px."""
+    program = ShaderProgram(f"trundle {name}", [VertexShader(LINE_VERTEX), FragmentShader(LINE_FRAGMENT)])
+    program["u_view"] = [1.0, 1.0, 1.0]
+    return program
+
+
+@lru_cache(maxsize=1)
+def gl_renderer() -> str | None:
+    """Name of what draws with OpenGL; None where it cannot be used: without a screen, or when no context can be made current."""
     if QGuiApplication.platformName() in ("offscreen", "minimal"):
-        return False
+        return None
     surface = QOffscreenSurface()
     surface.create()
     context = QOpenGLContext()
     if not (surface.isValid() and context.create() and context.makeCurrent(surface)):
-        return False
-    version = context.format().version()
+        return None
+    name, version = str(context.functions().glGetString(GL_RENDERER)), context.format().version()
     context.doneCurrent()
-    return bool(version >= (2, 0))
+    return name if version >= LEAST_VERSION else None
 
 
-def software_drawn() -> bool:
-    """Whether the processor draws in place of a graphics card; ask with a context current."""
-    context = QOpenGLContext.currentContext()
-    if context is None:
-        return False
-    name = context.functions().glGetString(0x1F01)
-    return "llvmpipe" in str(name) or "softpipe" in str(name)
+def gl_available() -> bool:
+    """Whether OpenGL can be used."""
+    return gl_renderer() is not None
+
+
+def samples() -> int:
+    """Samples per pixel: four on a graphics card, one where the processor draws (four take three times as long there)."""
+    name = gl_renderer() or ""
+    return 0 if any(word in name.lower() for word in SOFTWARE) else 4

@@ -5,17 +5,18 @@ from typing import Any
 
 import numpy as np
 from OpenGL import GL
+from pyqtgraph.opengl import GLMeshItem, GLViewWidget, MeshData
 from PySide6.QtCore import QPointF, QSize, Qt, Slot
 from PySide6.QtGui import QKeyEvent, QMatrix4x4, QMouseEvent, QQuaternion, QResizeEvent, QVector3D, QWheelEvent
 from PySide6.QtWidgets import QFrame, QHBoxLayout, QLabel, QToolButton, QVBoxLayout, QWidget
-from pyqtgraph.opengl import GLLinePlotItem, GLMeshItem, GLViewWidget, MeshData
 
 from engine.placement import Layout
-from studio.display import Array, BallPath, layout_of, levels_of, moment_at, orientation_at, path_of
-from studio.meshes import Meshes, Stage, Surface, pick, sphere
+from studio.display import Array, BallPath, layout_of, levels_of, moment_at, orientation_at, path_of, spaced
+from studio.meshes import ball_mesh, hit
+from studio.stage import Group, Ribbon, ribbon, ribbons, stage_of
 from studio.theme import Theme
 from studio.views.isometric import IsometricView
-from studio.views.shading import gl_available, shader
+from studio.views.shading import gl_available, line_shader, samples, shader
 from studio.widgets.strokes import path_colours
 from studio.workspace import Workspace
 
@@ -25,9 +26,13 @@ AZIMUTH, ELEVATION = -58.0, 26.0
 ORBIT, KEY_ORBIT, KEY_ZOOM = 0.4, 6.0, 1.2
 """deg a px, deg a key, share a key."""
 CLICK_REACH = 3.0
-MOST_POINTS = 6000
-"""Points of the path shown in space."""
-CLEAR, VESSEL_GLASS = 0.34, 0.5
+MOST_POINTS, SPACING = 6000, 400.0
+"""Points of the path shown in space, and how many of them lie along the largest side: closer ones fade to nothing."""
+THOUSAND = 1000.0
+FREE = 1.08
+"""Share of the distance added, so that nothing touches the border."""
+CLEAR, CHOSEN = 0.22, 0.34
+"""Opacity of what one looks through, plain and selected."""
 PATH_WIDTH, RIM_WIDTH = 2.2, 1.0
 
 BLEND: dict[Any, Any] = {
@@ -56,40 +61,61 @@ class ClearMesh(GLMeshItem):
         GL.glDisable(GL.GL_CULL_FACE)
 
 
+class Lines(GLMeshItem):
+    """Lines of an even width on screen."""
+
+    def __init__(self, name: str, width: float) -> None:
+        super().__init__(shader=line_shader(name), smooth=True, glOptions=BLEND)
+        self.line_width = width
+
+    def fill(self, lines: Ribbon, colours: np.ndarray) -> None:
+        """Take lines and the colour (k, 3) of each of their rows."""
+        self.setVisible(len(lines.faces) > 0)
+        if len(lines.faces) == 0:
+            return
+        rgba = np.concatenate([colours[lines.source, :3], lines.side[:, None]], axis=1).astype(np.float32)
+        mesh = MeshData(vertexes=lines.points, faces=lines.faces, vertexColors=rgba)
+        mesh._vertexNormals = lines.ahead
+        self.setMeshData(meshdata=mesh)
+
+    def paint(self) -> None:
+        """Draw for the present size of the view."""
+        view = self.view()
+        self.shader()["u_view"] = [0.5 * view.deviceWidth(), 0.5 * view.deviceHeight(), self.line_width * view.devicePixelRatioF()]
+        super().paint()
+
+
 class Space(GLViewWidget):
     """What is drawn with OpenGL, and how one moves about it."""
 
     def __init__(self, workspace: Workspace, theme: Theme, parent: QWidget | None = None) -> None:
         super().__init__(parent)
+        shape = self.format()
+        shape.setSamples(samples())
+        self.setFormat(shape)
         self.workspace, self.theme = workspace, theme
         self.follow = False
-        self._meshes = Meshes()
-        self.show_nothing()
+        self.layout_now = Layout(workspace.design, ())
+        self._stage = stage_of(self.layout_now)
         self._path: BallPath | None = None
         self._last = self._pressed = QPointF()
         self._space = False
         self.opts["fov"] = FIELD
         self.opts["azimuth"], self.opts["elevation"] = AZIMUTH, ELEVATION
         self.setFocusPolicy(Qt.FocusPolicy.StrongFocus)
-        self._path_line = GLLinePlotItem(width=PATH_WIDTH, antialias=True, glOptions=BLEND)
-        self._rims = GLLinePlotItem(mode="lines", width=RIM_WIDTH, antialias=True, glOptions=BLEND)
-        self._solid = GLMeshItem(shader=shader(), smooth=True, glOptions="opaque")
+        self._path_line, self._rims = Lines("path", PATH_WIDTH), Lines("rims", RIM_WIDTH)
+        self._opaque = GLMeshItem(shader=shader(), smooth=True, glOptions="opaque")
         self._clear = ClearMesh(shader=shader(), smooth=True, glOptions=BLEND)
         self._ball = GLMeshItem(shader=shader(), smooth=True, glOptions="opaque")
-        for order, item in enumerate((self._solid, self._ball, self._path_line, self._rims, self._clear)):
+        for order, item in enumerate((self._opaque, self._ball, self._path_line, self._rims, self._clear)):
             item.setDepthValue(order)
             self.addItem(item)
 
     # -- content ----------------------------------------------------------------------------------
-    def show_nothing(self) -> None:
-        """Start on an empty stage."""
-        self.layout_now = Layout(self.workspace.design, ())
-        self._stage: Stage = self._meshes.stage(self.layout_now)
-
     def show_design(self) -> None:
         """Take the surfaces of the design."""
         self.layout_now = layout_of(self.workspace.design, self.workspace.roll)
-        self._stage = self._meshes.stage(self.layout_now)
+        self._stage = stage_of(self.layout_now)
         self.colour()
 
     def show_roll(self) -> None:
@@ -102,19 +128,16 @@ class Space(GLViewWidget):
         """Colour everything anew: theme, selection, speeds."""
         self.setBackgroundColor(self.theme.colour("sheet"))
         stage = self._stage
-        _fill(self._solid, stage.solid, self._colours(stage.solid_element, "tube_fill", 1.0))
-        _fill(self._clear, stage.clear, self._colours(stage.clear_element, "tube_fill", CLEAR))
-        rims = self._colours(np.repeat(stage.rim_element, 2), "tube", 1.0)
-        self._rims.setVisible(len(stage.rims) > 0)
-        if len(stage.rims):
-            self._rims.setData(pos=stage.rims.reshape(-1, 3), color=rims)
+        _fill(self._opaque, stage.opaque, self._colours(stage.opaque.element, "tube_fill", 1.0))
+        _fill(self._clear, stage.clear, self._colours(stage.clear.element, "tube", CLEAR))
+        self._rims.fill(ribbons(stage.rims, self._step), self._colours(np.repeat(stage.rim_element, 2), "tube", 1.0))
         self._colour_path()
         self._colour_ball()
 
     def _colours(self, element: np.ndarray, token: str, alpha: float) -> np.ndarray:
         """Colour (n, 4) float32 of corners by their element; the selected ones in the accent."""
         plain = np.array(self.theme.colour(token, alpha).getRgbF(), dtype=np.float32)
-        accent = np.array(self.theme.colour("accent", min(1.0, alpha + 0.15)).getRgbF(), dtype=np.float32)
+        accent = np.array(self.theme.colour("accent", CHOSEN if alpha < 1.0 else 1.0).getRgbF(), dtype=np.float32)
         chosen = [each.index for each in self.layout_now.placed if each.element.id in self.workspace.selection]
         colours = np.tile(plain, (len(element), 1))
         colours[np.isin(element, chosen)] = accent
@@ -122,19 +145,19 @@ class Space(GLViewWidget):
 
     def _colour_path(self) -> None:
         path = self._path
-        self._path_line.setVisible(path is not None)
         if path is None:
+            self._path_line.setVisible(False)
             return
-        step = max(1, len(path.t) // MOST_POINTS)
-        levels = levels_of(path.speed[::step], path.top_speed)
+        kept = spaced(path.developed, max(float(path.developed[-1]) / MOST_POINTS, self._step * THOUSAND / SPACING))
+        levels = levels_of(path.speed[kept], path.top_speed)
         table = np.array([colour.getRgbF() for colour in path_colours(self.theme.dark)], dtype=np.float32)
-        self._path_line.setData(pos=path.place[::step].astype(np.float32), color=table[levels])
+        self._path_line.fill(ribbon(path.place[kept], self._step), table[levels])
 
     def _colour_ball(self) -> None:
-        surface, dark = sphere()
-        light, ink = (self.theme.colour(token).getRgbF() for token in ("soft", "ink"))
-        colours = np.where(dark[:, None], np.array(ink), np.array(light)).astype(np.float32)
-        _fill(self._ball, surface, colours)
+        mesh, light = ball_mesh()
+        plain, band = (self.theme.colour(token).getRgbF() for token in ("ink", "accent"))
+        colours = np.where(light[:, None], np.array(band), np.array(plain)).astype(np.float32)
+        _fill(self._ball, Group(mesh, np.zeros(0, dtype=np.int64)), colours)
 
     def show_time(self) -> None:
         """Put the ball where it is, turned as it is."""
@@ -155,14 +178,27 @@ class Space(GLViewWidget):
 
     # -- view -------------------------------------------------------------------------------------
     def fit(self) -> None:
-        """Show everything: the sphere round all that is placed fills the smaller side of the view."""
-        low, high = self.layout_now.bounds()
-        reach = max(0.5 * float(np.sqrt(((high - low) ** 2).sum())), 0.02)
-        aspect = min(1.0, self.height() / max(1, self.width()))
-        half = math.atan(math.tan(math.radians(0.5 * FIELD)) * aspect)
-        self.opts["center"] = QVector3D(*(0.5 * (low + high)).tolist())
-        self.opts["distance"] = 0.92 * reach / math.sin(half)
+        """Show everything: the nearest place from which all corners are inside the view."""
+        points = self._stage.points
+        if len(points) == 0:
+            return
+        matrix = np.array(self.viewMatrix().copyDataTo()).reshape(4, 4)[:3, :3]
+        seen = points @ matrix.T
+        middle = 0.5 * (seen.min(axis=0) + seen.max(axis=0))
+        away = np.abs(seen - middle)
+        half = math.tan(math.radians(0.5 * FIELD))
+        across, upright = half, half * self.height() / max(1, self.width())
+        toward = seen[:, 2] - middle[2]
+        distance = float((toward + np.maximum(away[:, 0] / across, away[:, 1] / upright)).max())
+        self.opts["center"] = QVector3D(*(matrix.T @ middle).tolist())
+        self.opts["distance"] = max(FREE * distance, 1e-2)
         self.update()
+
+    @property
+    def _step(self) -> float:
+        """A thousandth of the largest side of the box round everything placed, m."""
+        low, high = self.layout_now.bounds()
+        return max(float((high - low).max()), 0.01) / THOUSAND
 
     def zoom(self, factor: float) -> None:
         """Come nearer by a factor."""
@@ -170,22 +206,18 @@ class Space(GLViewWidget):
         self.update()
 
     def ray(self, at: QPointF) -> tuple[Array, Array]:
-        """Eye (3,) and unit direction (3,) through a place of the view."""
+        """Point (3,) near the eye and unit direction (3,) through a place of the view."""
         x = 2.0 * at.x() / max(1, self.width()) - 1.0
         y = 1.0 - 2.0 * at.y() / max(1, self.height())
         back, _ = (self.projectionMatrix(self.getViewport(), self.getViewport()) * self.viewMatrix()).inverted()
         near, far = (np.array(back.map(QVector3D(x, y, z)).toTuple()) for z in (-1.0, 1.0))
-        eye = np.array(self.cameraPosition().toTuple()) if hasattr(self.cameraPosition(), "toTuple") else near
         away = far - near
-        return eye, away / math.sqrt(away @ away)
+        return near, away / math.sqrt(away @ away)
 
     def element_at(self, at: QPointF) -> str:
         """Id of the element under a place of the view; empty for none."""
-        eye, ray = self.ray(at)
-        stage = self._stage
-        found = [(pick(eye, ray, stage.solid), stage.solid_element), (pick(eye, ray, stage.clear), stage.clear_element)]
-        (distance, corner), element = min(found, key=lambda pair: pair[0][0])
-        return self.layout_now.placed[int(element[corner])].element.id if math.isfinite(distance) else ""
+        found = hit(self._stage.solids, *self.ray(at))
+        return self.layout_now.placed[found].element.id if found is not None else ""
 
     # -- pointer and keys -------------------------------------------------------------------------
     def mousePressEvent(self, event: QMouseEvent) -> None:
@@ -326,12 +358,12 @@ class SpaceView(QFrame):
         self.space.show_time()
 
 
-def _fill(item: GLMeshItem, surface: Surface, colours: np.ndarray) -> None:
-    """Give an item a surface with the normals it brings; without triangles it is not shown."""
-    item.setVisible(len(surface.faces) > 0)
-    if len(surface.faces) == 0:
+def _fill(item: GLMeshItem, shown: Group, colours: np.ndarray) -> None:
+    """Give an item a mesh with the normals it brings; without triangles it is not shown."""
+    mesh = shown.mesh
+    item.setVisible(len(mesh.faces) > 0)
+    if len(mesh.faces) == 0:
         return
-    mesh = MeshData(vertexes=surface.vertices, faces=surface.faces, vertexColors=colours)
-    mesh._vertexNormals = surface.normals
-    item.setMeshData(meshdata=mesh)
-
+    taken = MeshData(vertexes=mesh.vertices, faces=mesh.faces, vertexColors=colours)
+    taken._vertexNormals = mesh.normals
+    item.setMeshData(meshdata=taken)

@@ -6,9 +6,9 @@ from typing import NamedTuple
 
 import numpy as np
 import pyqtgraph
+from pyqtgraph.functions import arrayToQPolygonF
 from PySide6.QtCore import QPointF, QRectF, QSize, Qt
 from PySide6.QtGui import QColor, QFont, QFontMetricsF, QPainter, QPainterPath, QPen, QPixmap, QPolygonF
-from pyqtgraph.functions import arrayToQPolygonF
 
 from engine.integrate.result import Regime
 from studio.display import LEVELS, Array, Indices, runs_of, thinned
