@@ -91,15 +91,27 @@ def _add_segment(patches: PatchList, entry: Placed, near: Neighbours, tag: Tag) 
     inside = patches.add_swept_inside(table, radius, (-reach, reach), False, tag)
     edges = _add_lips(patches, entry, inside, tag) if reach < HALF_TURN else ()
     mouth = end = -1
-    if near.before is not None and not is_segment(near.before) and not _flush(near.before, entry):
+    if near.before is not None and _stands_out(entry, near.before):
         mouth = _add_ring(patches, entry, inside, START, tag)
-    if near.after is not None and not goes_on(near.after):
+    if near.after is not None and (not goes_on(near.after) or is_narrower(entry, near.after)):
         end = _add_ring(patches, entry, inside, END, tag)
     elif near.after is None:
         for patch in (inside, *edges):
             patches.set_link(patch, END, EXIT)
         _add_way_out(patches, (table[-1, R], table[-1, D1]), radius, tag)
     return Walls((inside,), edges, tuple(range(first, len(patches))), mouth, end)
+
+
+def is_narrower(entry: Placed, other: Placed) -> bool:
+    """Whether a segment has a smaller bore than the segment beside it: its end stands out as a ledge."""
+    if not is_segment(entry) or not is_segment(other):
+        return False
+    return (entry.bore or 0.0) < (other.bore or 0.0) - SAME_BORE
+
+
+def _stands_out(entry: Placed, before: Placed) -> bool:
+    """Whether the inlet of a segment has an edge: after a wider segment, or after anything that does not end flush with it."""
+    return is_narrower(entry, before) if is_segment(before) else not _flush(before, entry)
 
 
 def _placed_curve(entry: Placed) -> tuple[Array, float]:
@@ -277,6 +289,8 @@ def join(patches: PatchList, first: tuple[Placed, Walls], second: tuple[Placed, 
 
 
 def _join_segments(patches: PatchList, walls: Walls, beyond: Walls) -> None:
+    if walls.end >= 0 or beyond.mouth >= 0:
+        return  # a step in the bore: the edge on it leads on, the wider wall just ends there
     patches.set_link(walls.parts[0], END, beyond.parts[0])
     patches.set_link(beyond.parts[0], START, walls.parts[0])
     for lip, following in zip(walls.lips, beyond.lips, strict=False):

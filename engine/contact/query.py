@@ -291,11 +291,12 @@ def is_full_tube(walls, patch):
 
 
 @kernel
-def nearest_wall(walls, y, r, active, left):
+def nearest_wall(walls, y, r, active, before):
     """Find the wall that a ball in state `y` touches next, other than `active` and what is linked to it.
 
     A wall within the ball counts only while the ball closes on it: one it is leaving must not hide another. Nor does one count
-    that the mouth of `left`, the wall it was on last, leads through.
+    that the mouth of the wall it was on last leads through, while it has not come out of it: `before` = (that wall, place at
+    the start of the step).
 
     Returns
     -------
@@ -316,7 +317,7 @@ def nearest_wall(walls, y, r, active, left):
         if off > max(free, 0.0):
             continue
         foot = foot_on(walls, patch, point, r, ANYWHERE)
-        if foot.gap < 0.0 and leads_through(walls, left, patch):
+        if foot.gap < 0.0 and leads_through(walls, before[0], patch) and is_within(walls, patch, before[1], r):
             free = min(free, max(off, 0.0))
             continue
         if foot.gap > -r and is_inside(walls, patch, foot):
@@ -329,6 +330,12 @@ def nearest_wall(walls, y, r, active, left):
         else:
             free = min(free, max(off, 0.0))
     return best, found, free
+
+
+@kernel
+def is_within(walls, patch, point, r):
+    """Return whether a ball at `point` lies within a wall."""
+    return foot_on(walls, patch, point, r, ANYWHERE).gap < 0.0
 
 
 @kernel

@@ -58,7 +58,7 @@ def fit_step(walls, ball, mode, work, plan):
 
 @kernel
 def touch_of(walls, ball, mode, work, place):
-    """Return (share, patch) of the touch of a wall that the ball is within at a share; `work.trial` gets the state there.
+    """Return (share, patch) of the touch of a wall that the ball is within at a share; `work.trial` gets its state.
 
     `place` = (patch, share). Where only the continuation of the wall beyond a boundary is met, what is linked there, a
     rim say, is met instead.
@@ -80,11 +80,13 @@ def touch_of(walls, ball, mode, work, place):
 def meet_wall(walls, ball, mode, work, plan):
     """Return (theta, patch, free way, extended) of the first wall met in the step just made.
 
-    `plan` = (h, tolerance, piece, q, extended, wall left last): the continuous extension is filled when a wall lies within the ball.
+    `plan` = (h, tolerance, piece, q, extended, wall left last): the continuous extension is filled when a wall lies within
+    the ball.
     """
     y1, r = work.y1, ball.radius
     h, tolerance, piece, q, extended, left = plan
-    gap, patch, way = nearest_wall(walls, y1, r, mode.patch, left)
+    before = (left, (work.y0[0], work.y0[1], work.y0[2]))
+    gap, patch, way = nearest_wall(walls, y1, r, mode.patch, before)
     if patch < 0 or gap >= 0.0:
         return NOTHING, -1, way, extended
     if not extended:
@@ -94,7 +96,7 @@ def meet_wall(walls, ball, mode, work, plan):
         if patch < 0 or gap >= (0.0 if met < 0 else -TOUCHING) or patch == met:
             break
         theta, met = touch_of(walls, ball, mode, work, (patch, min(theta, 1.0)))
-        gap, patch, way = nearest_wall(walls, work.trial, r, mode.patch)
+        gap, patch, way = nearest_wall(walls, work.trial, r, mode.patch, before)
     return theta, met, (way if met < 0 else 0.0), True
 
 

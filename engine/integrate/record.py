@@ -19,7 +19,7 @@ NEVER = np.zeros(1, dtype=np.uint8)
 NO_TIMES = np.zeros(0)
 SAMPLE_SPACING = 0.004
 """s. Samples at most this far apart, so that drawings and charts are smooth."""
-RESUME = 5 + STATE + 1
+RESUME = 5 + STATE + 2
 """Length of a start row, see `integrate.solve.solve`."""
 
 
@@ -47,6 +47,7 @@ def start_row(start: Start) -> Array:
     row = np.zeros(RESUME)
     row[0], row[1], row[2], row[3], row[4] = start.t, start.patch, start.regime, -1.0, 1.0
     row[5:8], row[8:11], row[11:14] = start.x, start.v, start.w
+    row[6 + STATE] = start.patch
     return row
 
 
@@ -57,6 +58,7 @@ def resume_row(mark: Array) -> Array:
     row[0], row[1:5] = mark[columns.MARK_T], mode
     row[5 : 5 + STATE] = mark[columns.MARK_Y : columns.MARK_Y + STATE]
     row[5 + STATE] = mark[columns.MARK_IMPACT]
+    row[6 + STATE] = mode[0] if mode[0] >= 0 else mark[columns.MARK_PATCH]
     return row
 
 

@@ -121,8 +121,9 @@ def solve(walls, ball, start, options, asked, cancel):
     ----------
     walls : Walls
     ball : BallParams
-    start : (5 + 13 + 1,) float
-        t, patch, regime, young, spin, the state y, impact loss so far. young < 0: the mode follows from the state.
+    start : (5 + 13 + 2,) float
+        t, patch, regime, young, spin, the state y, impact loss so far, wall the ball was on last (-1: none).
+        young < 0: the mode follows from the state.
     options : Options
     asked : (n,) float
         Rising times at which a sample is wanted, s.
@@ -137,6 +138,7 @@ def solve(walls, ball, start, options, asked, cancel):
     y = work.y0
     t, impact = start[0], start[5 + STATE]
     log, mode, correction = begin(walls, ball, start, work)
+    left = int(start[6 + STATE])
     status, steps, upcoming = GOES_ON, 0, 0
     h, free, window, count = FIRST_STEP, 0.0, t, 0
     fresh = True
@@ -150,7 +152,7 @@ def solve(walls, ball, start, options, asked, cancel):
         status = limits(t, options, steps, cancel, y)
         if status != GOES_ON:
             break
-        step = advance(walls, ball, mode, work, (h, options.end - t, free, contact, options.tolerance))
+        step = advance(walls, ball, mode, work, (h, options.end - t, free, contact, options.tolerance, left))
         span = (t, impact, step, asked, upcoming, options.spacing, options.tolerance)
         log, upcoming = sample_step(walls, ball, mode, work, log, span)
         free = step.free
@@ -165,6 +167,7 @@ def solve(walls, ball, start, options, asked, cancel):
         log = add_sample(log, y, mode, contact, (t, impact, -1))
         outcome = respond(walls, ball, mode, work, (step.met, step.slot, contact.slip))
         impact += outcome.lost
+        left = outcome.mode.patch if outcome.mode.patch >= 0 else outcome.patch
         mode, status, fresh = outcome.mode, outcome.status, True
         if outcome.kind != QUIET:
             # from here a run may be resumed: nothing of the step before may be carried on
