@@ -18,6 +18,8 @@ from engine.kernel import kernel
 
 GUARDS = 11
 LIFT, CONE, SLIP, STOP, SPIN, SIDE = 0, 1, 2, 3, 4, 5
+HALVINGS = 40
+"""Times a step is halved in search of a hop."""
 TURN_SHARE = 10.0
 """A velocity that has turned by a right angle within a step is stopped if it is below this many times `still`."""
 
@@ -146,6 +148,21 @@ def gap_at(walls, ball, patch, work, theta):
 
 
 @kernel
+def last_apart(walls, ball, patch, work, high):
+    """Return (share, gap) of a place in the step at which the ball is off a wall that it starts on; gap 0 when there is none.
+
+    Halving finds the hop however short it is: a place at most half as late as its end lies within it.
+    """
+    theta = high
+    for _ in range(HALVINGS):
+        theta *= 0.5
+        gap = gap_at(walls, ball, patch, work, theta)
+        if gap > 0.0:
+            return theta, gap
+    return 0.0, 0.0
+
+
+@kernel
 def locate_touch(walls, ball, patch, work, high):
     """Return the share of the step at which the gap to `patch`, below zero at `high`, last became zero.
 
@@ -153,12 +170,8 @@ def locate_touch(walls, ball, patch, work, high):
     """
     low, f_low = 0.0, gap_at(walls, ball, patch, work, 0.0)
     if f_low <= 0.0:
-        best = 0.0
-        for i in range(1, 16):
-            value = gap_at(walls, ball, patch, work, high * i / 16.0)
-            if value > best:
-                low, f_low, best = high * i / 16.0, value, value
-        if best == 0.0:
+        low, f_low = last_apart(walls, ball, patch, work, high)
+        if f_low <= 0.0:
             return 0.0
     f_high = gap_at(walls, ball, patch, work, high)
     for turn in range(ROOT_TURNS):

@@ -176,9 +176,11 @@ def between(walls, ball, pair, y, out):
     y[4] -= vn * n[1]
     y[5] -= vn * n[2]
     lost += 0.5 * vn * vn
+    other = second if stay == first else first
     new = mode_on(walls, ball, stay, y, out)
-    if new.regime != FLIGHT and presses(walls, ball, new, y, leave, out):
-        other = second if stay == first else first
+    if new.regime == FLIGHT:
+        return mode_on(walls, ball, other, y, out), lost, GOES_ON
+    if presses(walls, ball, new, y, leave, out):
         new = mode_on(walls, ball, other, y, out)
         if new.regime != FLIGHT and presses(walls, ball, new, y, n, out):
             return between_two(ball, new, y, lost)
