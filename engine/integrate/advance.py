@@ -65,13 +65,15 @@ def touch_of(walls, ball, mode, work, place):
     """
     patch, high = place
     share = locate_touch(walls, ball, patch, work, high)
+    if share < 0.0:
+        return NOTHING, -1
     dense_at(work, share, work.trial)
     y = work.trial
     side = side_beyond(walls, patch, foot_on(walls, patch, (y[0], y[1], y[2]), ball.radius, ANYWHERE))
     beyond = walls.link[patch, side] if side >= 0 else -1
     if beyond >= 0 and beyond != mode.patch and gap_at(walls, ball, beyond, work, high) < 0.0:
         patch = beyond
-        share = locate_touch(walls, ball, patch, work, high)
+        share = max(0.0, locate_touch(walls, ball, patch, work, high))
         dense_at(work, share, work.trial)
     return share, patch
 
@@ -95,7 +97,10 @@ def meet_wall(walls, ball, mode, work, plan):
     for _ in range(4):
         if patch < 0 or gap >= (0.0 if met < 0 else -TOUCHING) or patch == met:
             break
-        theta, met = touch_of(walls, ball, mode, work, (patch, min(theta, 1.0)))
+        share, wall = touch_of(walls, ball, mode, work, (patch, min(theta, 1.0)))
+        if wall < 0:
+            break
+        theta, met = share, wall
         gap, patch, way = nearest_wall(walls, work.trial, r, mode.patch, before)
     return theta, met, (way if met < 0 else 0.0), True
 

@@ -18,6 +18,10 @@ from engine.kernel import kernel
 
 GUARDS = 11
 LIFT, CONE, SLIP, STOP, SPIN, SIDE = 0, 1, 2, 3, 4, 5
+BEHIND = 0.01
+"""Share of its radius by which a ball is within a wall that it has come through from behind (parts that cross each other)."""
+NOT_THERE = -1.0
+"""Instead of a share of the step: the wall is not met."""
 HALVINGS = 40
 """Times a step is halved in search of a hop."""
 TURN_SHARE = 10.0
@@ -163,6 +167,22 @@ def last_apart(walls, ball, patch, work, high):
 
 
 @kernel
+def never_apart(walls, ball, patch, work, place):
+    """Return the share at which a ball that is nowhere off a wall in the step meets it, NOT_THERE when it came from behind.
+
+    `place` = (gap at the start, share). A ball that closes on the wall meets it at once; one that only grazes it goes on to
+    the end of the step, so that time passes.
+    """
+    gap, high = place
+    if gap < -BEHIND * ball.radius:
+        return NOT_THERE
+    y = work.y0
+    foot = foot_on(walls, patch, (y[0], y[1], y[2]), ball.radius, ANYWHERE)
+    closing = y[3] * foot.nx + y[4] * foot.ny + y[5] * foot.nz < -STOPPED_SLIP
+    return 0.0 if closing else high
+
+
+@kernel
 def locate_touch(walls, ball, patch, work, high):
     """Return the share of the step at which the gap to `patch`, below zero at `high`, last became zero.
 
@@ -170,9 +190,10 @@ def locate_touch(walls, ball, patch, work, high):
     """
     low, f_low = 0.0, gap_at(walls, ball, patch, work, 0.0)
     if f_low <= 0.0:
+        start = f_low
         low, f_low = last_apart(walls, ball, patch, work, high)
         if f_low <= 0.0:
-            return 0.0
+            return never_apart(walls, ball, patch, work, (start, high))
     f_high = gap_at(walls, ball, patch, work, high)
     for turn in range(ROOT_TURNS):
         if high - low < ROOT_SETTLED:
