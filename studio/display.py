@@ -1,7 +1,7 @@
 """Results as arrays to draw: the ball's path, what it does at a time, its orientation, colour runs, places of findings.
 
-No widgets and no Qt: everything here is arrays in, arrays out. Shapes of elements are in `studio.outlines` (from above) and
-`studio.meshes` (in space).
+No widgets and no Qt: everything here is arrays in, arrays out. Shapes of elements are in `studio.outlines` (from
+above) and `studio.meshes` (in space).
 """
 
 import math
@@ -169,7 +169,7 @@ def arrivals(path: BallPath) -> list[Arrival]:
 
 
 def losses_of(path: BallPath) -> tuple[float, list[tuple[str, float]]]:
-    """Head lost on the whole way (m) and the share of each cause, largest first; causes below half a per cent are left out."""
+    """Head lost on the whole way (m) and the share of each cause, largest first; below half a per cent left out."""
     lost = path.lost[-1] - path.lost[0]
     total = float(lost.sum())
     if total <= 0.0:
@@ -279,8 +279,8 @@ def turn_quaternions(turns: Array) -> Array:
 def orientations(t: Array, spin: Array) -> Array:
     """Orientation (n, 4) at times (n,) from the angular velocity (n, 3), starting unturned.
 
-    q_i+1 = exp(dt (w_i + w_i+1)/2) q_i, second order in dt. The running product is taken by doubling: after pass k each row
-    holds the product over the last 2^k steps, so n rows take log2 n passes of array work.
+    q_i+1 = exp(dt (w_i + w_i+1)/2) q_i, second order in dt. The running product is taken by doubling: after pass k each
+    row holds the product over the last 2^k steps, so n rows take log2 n passes of array work.
     """
     steps = turn_quaternions(0.5 * (spin[1:] + spin[:-1]) * np.diff(t)[:, None])
     product = np.concatenate([[[1.0, 0.0, 0.0, 0.0]], steps])
@@ -292,7 +292,7 @@ def orientations(t: Array, spin: Array) -> Array:
 
 
 def orientation_at(path: BallPath, moment: Moment) -> Array:
-    """Orientation (4,) of the ball at a moment: that of the sample before, turned on by the angular velocity since."""
+    """Orientation (4,) of the ball at a moment: that of the sample before, turned on by the spin since."""
     i = moment.sample
     since = moment.t - path.t[i]
     span = path.t[i + 1] - path.t[i]
@@ -303,7 +303,7 @@ def orientation_at(path: BallPath, moment: Moment) -> Array:
 
 # -- what a person may take hold of ---------------------------------------------------------------
 class Grip(NamedTuple):
-    """A place of an element that may be dragged: what it is (inlet, outlet, centre, point), its number, where (3,) m."""
+    """A place that may be dragged: what it is (inlet, outlet, centre, point), its number, where (3,) m."""
 
     role: str
     number: int

@@ -1,7 +1,7 @@
-"""Elements seen from above, to scale: edges of walls and bores, rims and throats, ordered by height. Arrays only, no Qt.
+"""Elements seen from above, to scale: walls and bores, rims and throats, ordered by height. Arrays only, no Qt.
 
-A tube of radius R about a line c(s) shows from above where its normal is level: c + R m and c - R m with m the level unit
-vector across the tangent. That is exact for any slope.
+A tube of radius R about a line c(s) shows from above where its normal is level: c + R m and c - R m with m the level
+unit vector across the tangent. That is exact for any slope.
 """
 
 from dataclasses import dataclass
@@ -14,7 +14,7 @@ from engine.placement import Layout, Placed
 from studio.display import Array
 
 MOST_TURN = 2.2
-"""rad. A stretch of track that turns more than this in plan is drawn in pieces, so that a helix can pass over itself."""
+"""rad. A stretch of track that turns more than this in plan is drawn in pieces: a helix passes over itself."""
 MOST_FALL = 0.03
 """m. Likewise a stretch that falls by more than this."""
 STEEP = 0.05
@@ -72,7 +72,7 @@ def outlines_of(layout: Layout) -> list[Outline]:
 
 # -- track ----------------------------------------------------------------------------------------
 def across_of(curve: Array) -> Array:
-    """Level unit vectors (n, 2) across a curve, keeping to one side of it even where it stands upright or turns over."""
+    """Level unit vectors (n, 2) across a curve, keeping to one side even where it stands upright or turns over."""
     tangent = curve[:, D1]
     across = np.stack([-tangent[:, 1], tangent[:, 0]], axis=1)
     side = np.cross(tangent, curve[:, DOWN])[:, :2]

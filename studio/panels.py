@@ -1,7 +1,7 @@
 """Elements as flat panels for a drawing without OpenGL: seen from a direction, sorted by depth. Arrays only, no Qt.
 
-A tube is drawn by its silhouette: from a direction e it shows where its normal is square to e, at c + R m and c - R m with
-m = t x e / |t x e|. Troughs, vessels and plates are drawn as the panels they are made of.
+A tube is drawn by its silhouette: from a direction e it shows where its normal is square to e, at c + R m and
+c - R m with m = t x e / |t x e|. Troughs, vessels and plates are drawn as the panels they are made of.
 """
 
 import math
@@ -102,7 +102,9 @@ def _cut(rows: Array, curve: Array) -> Array:
     parts = np.maximum(1, np.ceil(step / LONGEST)).astype(np.int64)
     if parts.max(initial=1) == 1:
         return rows
-    s = np.concatenate([np.linspace(a, b, n, endpoint=False) for a, b, n in zip(rows[:-1, 0], rows[1:, 0], parts, strict=True)])
+    s = np.concatenate(
+        [np.linspace(a, b, n, endpoint=False) for a, b, n in zip(rows[:-1, 0], rows[1:, 0], parts, strict=True)]
+    )
     s = np.append(s, rows[-1, 0])
     return np.stack([np.interp(s, curve[:, 0], curve[:, column]) for column in range(curve.shape[1])], axis=1)
 

@@ -1,4 +1,4 @@
-"""Everything to show in space, joined: one opaque and one clear mesh, rims, and lines of even width on screen. No Qt."""
+"""Everything to show in space, joined: an opaque and a clear mesh, rims, lines of even width on screen. No Qt."""
 
 from collections.abc import Sequence
 from typing import NamedTuple
@@ -69,8 +69,8 @@ def group(solids: Sequence[Solid]) -> Group:
 class Ribbon(NamedTuple):
     """Lines drawn with an even width on screen: each point twice, once for each side of the line.
 
-    `points` (n, 3); `ahead` (n, 3) a short step along the line; `side` (n,) 0 or 1; `faces` (m, 3); `source` (n,) the row of
-    the line each comes from.
+    `points` (n, 3); `ahead` (n, 3) a short step along the line; `side` (n,) 0 or 1; `faces` (m, 3); `source` (n,) the
+    row of the line each comes from.
     """
 
     points: Single

@@ -1,7 +1,7 @@
 """A sheet one draws on: world and screen, zoom at the pointer, drag to move, fit, a grid that suits the scale.
 
-What does not move is painted once into a picture and kept until the view, the theme or the drawing changes; the ball and the
-time cursor are painted over it.
+What does not move is painted once into a picture and kept until the view, the theme or the drawing changes; the ball
+and the time cursor are painted over it.
 """
 
 import math
@@ -253,7 +253,7 @@ class Canvas(QWidget):
         self.pan(at.x() - self._last.x(), at.y() - self._last.y())
 
     def keyPressEvent(self, event: QKeyEvent) -> None:
-        """Zoom with Page Up and Down or Ctrl and + or -, move with the arrows, fit with Home; Space and a drag move the view."""
+        """Zoom with Page Up and Down (Ctrl + and -), move with the arrows or Space and a drag, fit with Home."""
         key, middle = event.key(), QPointF(self.rect().center())
         pans = {
             Qt.Key.Key_Left: (KEY_PAN, 0.0),

@@ -1,4 +1,4 @@
-"""The developed elevation: height over the way travelled, head line above it, losses, regimes, findings, time cursor."""
+"""The developed elevation: height over the way travelled, head line, losses, regimes, findings, time cursor."""
 
 import math
 from typing import Any, ClassVar, NamedTuple
@@ -176,7 +176,7 @@ class ElevationView(Canvas):
 
     # -- words ------------------------------------------------------------------------------------
     def _paint_names(self, painter: QPainter, path: BallPath) -> None:
-        """Ticks where the ball enters each element, names where there is room: the selected first, then from the left."""
+        """Ticks where the ball enters each element, names where there is room: the selected first, then from left."""
         roll = self.workspace.roll
         if roll is None:
             return

@@ -73,7 +73,9 @@ def _write_radius(painter: QPainter, view: "PlanView", labels: Labels, entry: "P
     words = f"R {length_words(radius, view.workspace.design.units)}"
     ink = Ink(view.theme.colour("accent"), font_of(view.font(), USUAL, bold=True), view.theme.colour("sheet"))
     middle, size = 0.5 * (at + end), text_size(ink.font, words)
-    above, below, *beside = sorted(round_about(middle.x(), middle.y(), size, 5.0), key=lambda corner: abs(corner.x() + 0.5 * size[0] - middle.x()))
+    above, below, *beside = sorted(
+        round_about(middle.x(), middle.y(), size, 5.0), key=lambda corner: abs(corner.x() + 0.5 * size[0] - middle.x())
+    )
     corner = labels.place(size, [above, below, *beside])
     if corner is not None:
         draw_text(painter, corner, words, ink)
@@ -128,7 +130,9 @@ def write_names(painter: QPainter, view: "PlanView", labels: Labels) -> None:
         box = _box(view, entry)
         if not selected and max(box.width(), box.height()) < NAME_ROOM:
             continue
-        _write_name(painter, labels, box, (entry.element.title + _turn_words(entry), bold if selected else ink, selected))
+        _write_name(
+            painter, labels, box, (entry.element.title + _turn_words(entry), bold if selected else ink, selected)
+        )
 
 
 def _box(view: "PlanView", entry: "Placed") -> QRectF:

@@ -42,8 +42,8 @@ void main() {
     gl_FragColor = vec4(shade, soft * min(1.0, v_color.a + 0.55 * edge));
 }
 """
-"""Key light from the upper left, fill from the right, a small gloss; what one looks through is denser where it turns away, as a
-draughtsman would draw it, and fades at its very edge so that the edge is smooth. Both sides of a surface are lit."""
+"""Key light from the upper left, fill from the right, a small gloss; what one looks through is denser where it turns
+away, as a draughtsman would draw it, and fades at its very edge so that the edge is smooth. Both sides are lit."""
 
 LINE_VERTEX = """
 uniform mat4 u_mvp;
@@ -78,7 +78,7 @@ void main() {
     gl_FragColor = vec4(v_color.rgb, clamp(v_line.y - abs(v_line.x), 0.0, 1.0));
 }
 """
-"""Lines of even width on screen with smooth edges: the normal holds a short step along the line, the opacity the side."""
+"""Lines of even width on screen, smooth: the normal holds a short step along the line, the opacity the side."""
 
 
 @lru_cache(maxsize=1)
@@ -89,7 +89,7 @@ def shader() -> ShaderProgram:
 
 @lru_cache(maxsize=4)
 def line_shader(name: str) -> ShaderProgram:
-    """A program with which lines of one width are drawn; `u_view` is half the width and height of the view and the width of a line, px."""
+    """Program for lines of one width; `u_view`: half the width and height of the view, width of a line, px."""
     program = ShaderProgram(f"trundle {name}", [VertexShader(LINE_VERTEX), FragmentShader(LINE_FRAGMENT)])
     program["u_view"] = [1.0, 1.0, 1.0]
     return program
@@ -97,7 +97,7 @@ def line_shader(name: str) -> ShaderProgram:
 
 @lru_cache(maxsize=1)
 def gl_renderer() -> str | None:
-    """Name of what draws with OpenGL; None where it cannot be used: without a screen, or when no context can be made current."""
+    """Name of what draws with OpenGL; None without a screen, or when no context can be made current."""
     if QGuiApplication.platformName() in ("offscreen", "minimal"):
         return None
     surface = QOffscreenSurface()
@@ -116,6 +116,6 @@ def gl_available() -> bool:
 
 
 def samples() -> int:
-    """Samples per pixel: four on a graphics card, one where the processor draws (four take three times as long there)."""
+    """Samples per pixel: four on a graphics card, none where the processor draws (three times as slow there)."""
     name = gl_renderer() or ""
     return 0 if any(word in name.lower() for word in SOFTWARE) else 4

@@ -1,4 +1,4 @@
-"""The view in space: tubes one looks through, open troughs, vessels, the path in its colours, the ball turning as it does."""
+"""The view in space: tubes one looks through, open troughs, vessels, the path, the ball turning as it does."""
 
 import math
 from typing import Any
@@ -81,7 +81,11 @@ class Lines(GLMeshItem):
     def paint(self) -> None:
         """Draw for the present size of the view."""
         view = self.view()
-        self.shader()["u_view"] = [0.5 * view.deviceWidth(), 0.5 * view.deviceHeight(), self.line_width * view.devicePixelRatioF()]
+        self.shader()["u_view"] = [
+            0.5 * view.deviceWidth(),
+            0.5 * view.deviceHeight(),
+            self.line_width * view.devicePixelRatioF(),
+        ]
         super().paint()
 
 

@@ -154,7 +154,9 @@ def _halo(text: str, font_name: str, colour: str, ratio: float) -> QPixmap:
     outline.addText(QPointF(HALO, HALO + round(QFontMetricsF(font).ascent())), font, text)
     painter = QPainter(picture)
     painter.setRenderHint(QPainter.RenderHint.Antialiasing)
-    round_pen = QPen(QColor(colour), 2.0 * HALO, Qt.PenStyle.SolidLine, Qt.PenCapStyle.RoundCap, Qt.PenJoinStyle.RoundJoin)
+    round_pen = QPen(
+        QColor(colour), 2.0 * HALO, Qt.PenStyle.SolidLine, Qt.PenCapStyle.RoundCap, Qt.PenJoinStyle.RoundJoin
+    )
     painter.strokePath(outline, round_pen)
     painter.end()
     return picture
@@ -184,14 +186,14 @@ class Labels:
         x, y = self.lines[:, 0], self.lines[:, 1]
         return not bool(((x > rect.left()) & (x < rect.right()) & (y > rect.top()) & (y < rect.bottom())).any())
 
-    def place(
-        self, size: tuple[float, float], corners: Sequence[QPointF], *, needed: bool = True
-    ) -> QPointF | None:
+    def place(self, size: tuple[float, float], corners: Sequence[QPointF], *, needed: bool = True) -> QPointF | None:
         """First free one of some upper left corners, taken at once; None when all are taken.
 
         Places clear of lines come first; a text that is not `needed` is left out rather than written over lines.
         """
-        rects = [(corner, QRectF(corner.x() - 2.0, corner.y() - 1.0, size[0] + 4.0, size[1] + 2.0)) for corner in corners]
+        rects = [
+            (corner, QRectF(corner.x() - 2.0, corner.y() - 1.0, size[0] + 4.0, size[1] + 2.0)) for corner in corners
+        ]
         free = [(corner, rect) for corner, rect in rects if self.free(rect)]
         chosen = next((pair for pair in free if self.clear(pair[1])), free[0] if free and needed else None)
         if chosen is None:
