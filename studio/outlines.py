@@ -135,6 +135,8 @@ def _stretch(
 ) -> Outline:
     left, right = outer[0][piece], outer[1][piece]
     height = float(entry.curve[piece, R][:, 2].mean()) if entry.curve is not None else 0.0
+    ends = [np.stack([left[0], right[0]])] if piece.start == 0 else []
+    ends += [np.stack([left[-1], right[-1]])] if piece.stop == len(across) else []
     return Outline(
         entry.index,
         entry.element.id,
@@ -142,7 +144,7 @@ def _stretch(
         np.concatenate([left, right[::-1]]),
         np.concatenate([across[piece], -across[piece][::-1]]),
         (left, right),
-        (inner[0][piece], inner[1][piece]),
+        (inner[0][piece], inner[1][piece], *ends),
     )
 
 

@@ -39,8 +39,8 @@ def view(qtbot, rolled):
 def spot(view, element, share=0.5):
     """Place on screen of a point of an element's centreline."""
     curve = view.layout_now.find(element).curve
-    row = curve[int(share * (len(curve) - 1))]
-    return view.point(float(row[1]), float(row[2])).toPoint()
+    place = [float(np.interp(share * curve[-1, 0], curve[:, 0], curve[:, column])) for column in (1, 2)]
+    return view.point(*place).toPoint()
 
 
 def press(qtbot, view, at):
