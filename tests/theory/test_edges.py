@@ -1,7 +1,7 @@
 """Loops, edges and holes against closed forms.
 
-Sources: loop 27/10: Boston University notes (seen); sharp edge: derived; hole: free-flight rule, Penner, Can. J. Phys. 80,
-83 (2002) by way of a public note (the number 1.31 m/s seen), Holmes, Am. J. Phys. 59, 129 (1991) (from memory).
+Sources: loop 27/10: Boston University notes (seen); sharp edge: derived; hole: free-flight rule, Penner, Can. J. Phys.
+80, 83 (2002) by way of a public note (the number 1.31 m/s seen), Holmes, Am. J. Phys. 59, 129 (1991) (from memory).
 """
 
 import math
@@ -12,7 +12,7 @@ import pytest
 from engine.contact.patches import END, HOLE, U_MAX, PatchList, Rectangle, Revolution, Tag
 from engine.geometry import primitives, profiles
 from engine.integrate.result import EventKind
-from tests.rolls import G, SHELL, SOLID, STICKS, UP, ball, event, free_start, happens, roll, rolling_start, well
+from tests.rolls import SHELL, SOLID, STICKS, UP, G, ball, event, free_start, happens, roll, rolling_start, well
 
 ALONG = (np.array([1.0, 0.0, 0.0]), np.array([0.0, 1.0, 0.0]))
 
@@ -97,7 +97,7 @@ def test_round_edge_lets_a_fast_ball_fly_at_once(share: float) -> None:
 )
 @pytest.mark.parametrize("share", [0.995, 1.005])
 def test_capture_by_a_hole(radius: float, hole_radius: float, aside: float, limit: float, share: float) -> None:
-    """Centred: v = (2 R_h - a) sqrt(g/2a); by delta off centre: (sqrt(R_h^2 - d^2) + sqrt((R_h - a)^2 - d^2)) sqrt(g/2a).
+    """Centred v = (2 R_h - a) sqrt(g/2a), by d off centre (sqrt(R_h^2 - d^2) + sqrt((R_h - a)^2 - d^2)) sqrt(g/2a).
 
     Below it the centre has dropped by a before the ball meets the far wall, above it has not: it meets the rim.
     """

@@ -3,6 +3,7 @@
 Source: independent solutions in reduced coordinates (see "source" in cases/open.json); every case names its own.
 """
 
+import json
 from pathlib import Path
 
 import numpy as np
@@ -14,9 +15,16 @@ from engine.reference.compare import compare
 from engine.reference.run import run_case
 from engine.verification import verify_file
 
-CASES = {case.name: case for case in read_cases(Path(__file__).parent / "cases" / "open.json")}
+FILE = Path(__file__).parent / "cases" / "open.json"
+CASES = {case.name: case for case in read_cases(FILE)}
 ROLLED = [name for name, case in CASES.items() if case.start is not None]
-WITHOUT_RUN = {"A6-05-dome-angles", "A7-01-loop-heights", "C1-01-edge-criterion", "C2-01-hole-speeds", "E1-01-sphere-drag"}
+WITHOUT_RUN = {
+    "A6-05-dome-angles",
+    "A7-01-loop-heights",
+    "C1-01-edge-criterion",
+    "C2-01-hole-speeds",
+    "E1-01-sphere-drag",
+}
 CROSS_CHECKED = 1e-9
 """m. The cases are good to about 1e-12 m; the engine at its tight tolerance comes this near where errors do not grow."""
 AMPLIFIED = 6e-9
@@ -38,9 +46,7 @@ def test_position_is_far_inside_the_limit(name: str) -> None:
 @pytest.mark.parametrize("name", [name for name in ROLLED if CASES[name].samples])
 def test_forces_agree_at_the_samples(name: str) -> None:
     """Normal force and friction over mass, which `trundle verify` does not look at."""
-    import json
-
-    given = {case["name"]: case for case in json.loads((Path(__file__).parent / "cases" / "open.json").read_text())["cases"]}
+    given = {case["name"]: case for case in json.loads(FILE.read_text(encoding="utf-8"))["cases"]}
     run = run_case(CASES[name])
     for sample in given[name]["samples"]:
         row = run.at(sample["t"])
@@ -52,6 +58,6 @@ def test_forces_agree_at_the_samples(name: str) -> None:
 
 
 def test_whole_file_is_counted() -> None:
-    report = verify_file(Path(__file__).parent / "cases" / "open.json")
+    report = verify_file(FILE)
     assert (report.passed, report.failed, report.not_run) == (len(CASES) - len(WITHOUT_RUN), 0, len(WITHOUT_RUN))
     assert np.isfinite([list(case.worst.values()) for case in report.cases]).all()

@@ -13,10 +13,10 @@ import pytest
 from engine.geometry import profiles
 from engine.integrate.result import EventKind
 from tests.rolls import (
-    G,
     SHELL,
     SLICK,
     SOLID,
+    G,
     ball,
     cone,
     coulomb,
@@ -107,7 +107,7 @@ def test_cone_keeps_areal_speed_and_turns_height_into_spin() -> None:
 
 
 def test_paraboloid_turns_at_one_rate_at_every_height() -> None:
-    """Centre surface z = c r^2: Omega^2 = 2 c g/(1+k), whatever the radius; a tiny ball keeps wall and centre surface together."""
+    """Centre surface z = c r^2: Omega^2 = 2 c g/(1+k), whatever the radius. A tiny ball: wall and centre surface as one."""
     scene, rolling = revolved(profiles.parabola((0.0, 1.0), 4.0)), ball(1e-5)
     for rho in (0.05, 0.2, 0.4):
         there = foot(scene, rolling, (rho, 0.0, 2.0 * rho**2))
@@ -147,7 +147,7 @@ def test_small_swing_in_a_bowl(k: float) -> None:
 @pytest.mark.parametrize("k", [0.2, SOLID, 0.5, SHELL])
 @pytest.mark.parametrize("speed", [0.05, 0.3, 0.9])
 def test_lift_off_from_a_dome(k: float, speed: float) -> None:
-    """Cos = (2 + (1+k) F)/(3+k), F = v0^2/(g (R+a)): 10/17 for a solid ball from rest; spin at leaving as in Irodov 1.263."""
+    """Cos = (2 + (1+k) F)/(3+k), F = v0^2/(g (R+a)): 10/17 for a solid ball from rest; spin as in Irodov 1.263."""
     scene, rolling = sphere(0.2, outside=True), ball(k=k)
     path = 0.2 + rolling.radius
     froude = speed**2 / (G * path)
@@ -172,13 +172,15 @@ def test_frictionless_dome_lets_go_at_two_thirds() -> None:
 def test_fast_ball_leaves_the_crest_at_once() -> None:
     scene, rolling = sphere(0.2, outside=True), ball()
     path = 0.2 + rolling.radius
-    run = roll(scene, rolling, rolling_start(scene, rolling, (0.0, 0.0, path), (1.001 * math.sqrt(G * path), 0.0, 0.0)), 0.1)
+    run = roll(
+        scene, rolling, rolling_start(scene, rolling, (0.0, 0.0, path), (1.001 * math.sqrt(G * path), 0.0, 0.0)), 0.1
+    )
     assert not np.isin(run.regime[1:], (0, 1)).any()
 
 
 @pytest.mark.parametrize(("mu", "degrees"), [(0.1, 17.97), (0.2, 29.07), (0.3, 35.38), (0.5, 41.83), (1.0, 47.54)])
 def test_slip_on_a_dome_starts_where_friction_runs_out(mu: float, degrees: float) -> None:
-    """mu = 2 sin/(17 cos - 10) for a solid ball from rest at the top (from memory, derived anew)."""
+    """Mu = 2 sin/(17 cos - 10) for a solid ball from rest at the top (from memory, derived anew)."""
     scene, rolling = sphere(0.2, coulomb(mu), outside=True), ball()
     path = 0.2 + rolling.radius
     run = roll(scene, rolling, rolling_start(scene, rolling, (0.0, 0.0, path), (1e-3, 0.0, 0.0)), 3.0)

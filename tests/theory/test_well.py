@@ -11,7 +11,7 @@ import numpy as np
 import pytest
 
 from engine.model.ball import Ball, Layer, Material
-from tests.rolls import G, SHELL, SOLID, ball, roll, rolling_start, state_at, well
+from tests.rolls import SHELL, SOLID, G, ball, roll, rolling_start, state_at, well
 
 STEEL, PLASTIC, RUBBER = (
     Material(id="steel", density=7800.0),
