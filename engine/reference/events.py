@@ -62,8 +62,8 @@ def highest_point(run: CaseRun, index: int = 0) -> Moment | None:
 def _return_along(run: CaseRun, way: Array, index: int) -> Moment | None:
     """Return when the motion along a unit vector (3,) is back at its start.
 
-    f = (x - x0) v0 + (v - v0) a0/nu^2 rises through 0. On a closed orbit this holds exactly after every period, whatever
-    the scale nu; half way round f falls.
+    f = (x - x0) v0 + (v - v0) a0/nu^2 rises through 0. On a closed orbit this holds exactly after every period,
+    whatever the scale nu; half way round f falls.
     """
     rows = run.rows.samples
     y0 = rows[0, columns.Y : columns.Y + 6]

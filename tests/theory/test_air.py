@@ -1,7 +1,7 @@
 """Drag of a sphere against the open library `fluids`, and closed forms of motion in air.
 
-`fluids.drag.Clift_Gauvin` holds the correlation of Clift and Gauvin (1971) as in Clift, Grace and Weber. The density and
-viscosity of air at 20 C are from memory; at 15 C 1.225 kg/m3 and 1.7894e-5 Pa s likewise.
+`fluids.drag.Clift_Gauvin` holds the correlation of Clift and Gauvin (1971) as in Clift, Grace and Weber. Density and
+viscosity of air at 15 C, 1.225 kg/m3 and 1.7894e-5 Pa s, are from memory.
 """
 
 import math

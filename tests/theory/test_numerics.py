@@ -1,7 +1,7 @@
 """The numbers behind the motion: order of the step and of its continuous extension, energy, bookkeeping, determinism.
 
-Orders: Dormand and Prince 8(5,3) with a seventh-order continuous extension; Hairer, Norsett and Wanner, Solving Ordinary
-Differential Equations I, II.5 and II.6.
+Orders: Dormand and Prince 8(5,3) with a seventh-order continuous extension; Hairer, Norsett and Wanner, Solving
+Ordinary Differential Equations I, II.5 and II.6.
 """
 
 import math

@@ -26,7 +26,7 @@ WITHOUT_RUN = {
     "E1-01-sphere-drag",
 }
 CROSS_CHECKED = 1e-9
-"""m. The cases are good to about 1e-12 m; the engine at its tight tolerance comes this near where errors do not grow."""
+"""m. The cases are good to about 1e-12 m; the engine at its tight tolerance comes this near."""
 AMPLIFIED = 6e-9
 """m. Those that pass through slip, whose onset is approximated (see `constants.YOUNG_SLIP`), come this near."""
 

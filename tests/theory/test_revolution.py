@@ -107,7 +107,7 @@ def test_cone_keeps_areal_speed_and_turns_height_into_spin() -> None:
 
 
 def test_paraboloid_turns_at_one_rate_at_every_height() -> None:
-    """Centre surface z = c r^2: Omega^2 = 2 c g/(1+k), whatever the radius. A tiny ball: wall and centre surface as one."""
+    """Centre surface z = c r^2: Omega^2 = 2 c g/(1+k) at every radius. A tiny ball: wall and centre surface as one."""
     scene, rolling = revolved(profiles.parabola((0.0, 1.0), 4.0)), ball(1e-5)
     for rho in (0.05, 0.2, 0.4):
         there = foot(scene, rolling, (rho, 0.0, 2.0 * rho**2))

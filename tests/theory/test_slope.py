@@ -1,8 +1,8 @@
 """Slide to roll, slopes, rolling loss, spin loss and impact on planes against closed forms.
 
-Sources: 5/7, 2/7, 12/49 and the slope limit from memory, derived anew (idea seen in notes on pool, Ben-Gurion University);
-two definitions of the rolling coefficient: Am. J. Phys. 90, 648 (2022) (seen), here the energy form; impact in two
-regimes: derived, cf. Garwin, Am. J. Phys. 37, 88 (1969) (from memory).
+Sources: 5/7, 2/7, 12/49 and the slope limit from memory, derived anew (idea seen in notes on pool, Ben-Gurion
+University); two definitions of the rolling coefficient: Am. J. Phys. 90, 648 (2022) (seen), here the energy form;
+impact in two regimes: derived, cf. Garwin, Am. J. Phys. 37, 88 (1969) (from memory).
 """
 
 import math
@@ -87,7 +87,7 @@ def test_incline_with_rolling_loss(degrees: float, loss: float, expected: float)
 
 @pytest.mark.parametrize("k", [SOLID, SHELL])
 def test_level_deceleration_and_its_two_definitions(k: float) -> None:
-    """Deceleration c g/(1+k): c = (1+k)/2 (v1^2 - v2^2)/(g s), 0.7 for a solid ball; the energy lost per metre is c N."""
+    """Deceleration c g/(1+k): c = (1+k)/2 (v1^2 - v2^2)/(g s), 0.7 for a solid ball; energy lost per metre c N."""
     loss, speed = 0.01, 0.5
     scene, rolling = slope(law=STICKS._replace(rolling_loss=loss)), ball(k=k)
     run = roll(scene, rolling, rolling_start(scene, rolling, (0.0, 0.0, RADIUS), (speed, 0.0, 0.0)), 60.0, [1.0])
@@ -140,7 +140,7 @@ def test_oblique_impact_sticks_or_slides(k: float, share: float) -> None:
 
 @pytest.mark.parametrize(("drop", "rise", "e"), [(0.305, 0.240, 0.887), (0.305, 0.260, 0.923), (0.300, 0.230, 0.876)])
 def test_rebound_height(drop: float, rise: float, e: float) -> None:
-    """A table-tennis ball on steel rises 240 to 260 mm from 305 mm, on a table about 230 from 300 (rule texts, seen)."""
+    """A table-tennis ball rises 240 to 260 mm from 305 on steel, about 230 from 300 on a table (rule texts, seen)."""
     rolling = ball(0.02, SHELL, 0.0027)
     start = free_start((0.0, 0.0, 0.02 + drop), (0.0, 0.0, 0.0))
     run = roll(slope(law=coulomb(0.2, restitution=e)), rolling, start, 0.6, spacing=1e-3)

@@ -117,7 +117,7 @@ def test_spin_about_the_normal_shifts_the_middle(outward: float, middle: float) 
 
 @pytest.mark.parametrize("bore", [10.0, 100.0, 1000.0])
 def test_wide_cylinder_is_a_wall_that_returns_nothing(bore: float) -> None:
-    """As the radius grows the ball comes down as on an upright plane: z -> -g t^2/(2 (1+k)), the next order by the cosine."""
+    """As the radius grows the ball comes down as on an upright plane: z -> -g t^2/(2 (1+k)); next order by cosine."""
     scene, rolling = well(bore), ball()
     start = rolling_start(scene, rolling, (bore - 0.0127, 0.0, 0.0), (0.0, SPEED, 0.0))
     run = roll(scene, rolling, start, 0.6, [0.5])
@@ -131,8 +131,8 @@ def test_wide_cylinder_is_a_wall_that_returns_nothing(bore: float) -> None:
 def test_lying_cylinder_swings_as_a_pendulum_and_trades_axial_speed_for_spin() -> None:
     """Axial speed u and spin s about the normal keep u^2 + k/(1+k) (r s)^2 where gravity has no axial part.
 
-    The swing alone has the period 2 pi sqrt((1+k)(R-r)/g) for small angles (textbook). Cf. "Gutterballs and rolling down
-    the tubes", Am. J. Phys. 89, 459 (2021) (abstract seen), where such axial oscillations were measured.
+    The swing alone has the period 2 pi sqrt((1+k)(R-r)/g) for small angles (textbook). Such axial oscillations were
+    measured: "Gutterballs and rolling down the tubes", Am. J. Phys. 89, 459 (2021) (abstract seen).
     """
     bore, angle = 0.15, 0.9
     scene, rolling = well(bore, axis=(1.0, 0.0, 0.0)), ball()
