@@ -58,6 +58,8 @@ class BallPath:
         Slip speed, m/s; margin to the lip, nan where there is none.
     spin : (n, 3) rad/s
         Angular velocity.
+    bore_spin : (n,) rad/s
+        Its part about the normal of the wall; 0 in flight.
     radius : float
         m.
     """
@@ -75,6 +77,7 @@ class BallPath:
     slip: Array
     margin: Array
     spin: Array
+    bore_spin: Array
     radius: float
 
     @cached_property
@@ -138,6 +141,7 @@ def path_of(roll: "Roll | None") -> BallPath | None:
         slip=track.slip_speed,
         margin=track.margin,
         spin=track.w,
+        bore_spin=(track.w * track.normal).sum(axis=1),
         radius=roll.ball.radius,
     )
 
@@ -155,6 +159,26 @@ def moment_at(path: BallPath, t: float) -> Moment:
     columns = (path.speed, path.angle, path.load, path.developed, path.head)
     speed, angle, load, developed, head = (float(between(column)) for column in columns)
     return Moment(t, between(path.place), speed, angle, load, developed, head, sample)
+
+
+class Series(NamedTuple):
+    """One quantity over time: words, SI unit, values (n,) in that unit, nan where it has none."""
+
+    words: str
+    unit: str
+    values: Array
+
+
+def series_of(path: BallPath) -> list[Series]:
+    """Quantities that are charted over time."""
+    return [
+        Series("speed", "m/s", path.speed),
+        Series("wall angle", "rad", np.where(path.regime == int(Regime.FLIGHT), np.nan, path.angle)),
+        Series("load", "g", path.load),
+        Series("slip", "m/s", path.slip),
+        Series("spin about the normal", "rad/s", path.bore_spin),
+        Series("head", "m", path.head),
+    ]
 
 
 def time_at(path: BallPath, developed: float) -> float:
