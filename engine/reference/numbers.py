@@ -227,6 +227,7 @@ OWN: dict[str, Number] = {
     "friction_limit_per_m": friction_limit,
     "theta_rate": turning_rate,
     "angular_rate": turning_rate,
+    "rho_centre": lambda run: float(np.hypot(*run.span[:, columns.Y : columns.Y + 2].T).mean()),
     "period": period,
     "omega_z": lambda run: 2.0 * math.pi / period(run),
     "turns_per_oscillation": lambda run: abs(turning_rate(run)) * period(run) / (2.0 * math.pi),
