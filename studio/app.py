@@ -30,10 +30,11 @@ from studio.workers.preview import Preview
 from studio.working_copy import discard, left_copies
 from studio.workspace import Workspace
 
+PROGRAM = "trundle"
 LOG_BYTES, LOG_FILES = 500_000, 3
 SETTLE_MS = 400
 """ms after the roll before a picture is taken: the drawings have settled."""
-ROLL_LIMIT_MS = 120_000
+ROLL_LIMIT_MS = 300_000
 """ms. A picture is taken even when the roll has not ended by then (first start compiles)."""
 
 log = logging.getLogger("trundle")
@@ -66,7 +67,9 @@ def make_application() -> QApplication:
     application = QApplication.instance()
     if not isinstance(application, QApplication):
         application = QApplication(["trundle"])
-    application.setApplicationName("trundle")
+    if application.applicationName() == PROGRAM:
+        return application
+    application.setApplicationName(PROGRAM)
     application.setApplicationDisplayName("Trundle")
     application.setStyle("Fusion")
     application.setFont(window_font(load_fonts()))

@@ -3,8 +3,11 @@
 import os
 
 import pytest
+from PySide6.QtCore import QCoreApplication, Qt
 
 os.environ.setdefault("QT_QPA_PLATFORM", "offscreen")
+# before any application object: shaders are kept for all views, and a second view draws nothing without it
+QCoreApplication.setAttribute(Qt.ApplicationAttribute.AA_ShareOpenGLContexts)
 
 
 @pytest.fixture(autouse=True)

@@ -28,17 +28,15 @@ def blank_drawings(workspace, theme):
 
 
 @pytest.fixture
-def window(qtbot, qapp):
+def window(qtbot, monkeypatch):
+    monkeypatch.setattr(dialogs, "ask_unsaved", lambda parent, name: dialogs.Answer.DISCARD)
     workspace = Workspace(Theme())
     made = MainWindow(workspace, Preview(workspace, roll), Settings(), blank_drawings)
     made.resize(1440, 900)
     made.show()
     yield made
-    workspace.undo_stack.setClean()
-    workspace._recovered = False
     made.close()
     made.deleteLater()
-    qapp.setStyleSheet("")
 
 
 @pytest.fixture
