@@ -31,6 +31,8 @@ from studio.working_copy import discard, left_copies
 from studio.workspace import Workspace
 
 PROGRAM = "trundle"
+READY = "trundle_ready"
+"""Property of an application object that has been set up: style and fonts are loaded once."""
 LOG_BYTES, LOG_FILES = 500_000, 3
 SETTLE_MS = 400
 """ms after the roll before a picture is taken: the drawings have settled."""
@@ -67,8 +69,9 @@ def make_application() -> QApplication:
     application = QApplication.instance()
     if not isinstance(application, QApplication):
         application = QApplication(["trundle"])
-    if application.applicationName() == PROGRAM:
+    if application.property(READY):
         return application
+    application.setProperty(READY, True)
     application.setApplicationName(PROGRAM)
     application.setApplicationDisplayName("Trundle")
     application.setStyle("Fusion")

@@ -232,7 +232,8 @@ def joined(grids: list[tuple[Array, Array, Corners]], lines: Array) -> Mesh:
     a, b, c = (vertices[faces[:, corner]] for corner in range(3))
     wrong = (np.cross(b - a, c - a) * normals[faces].sum(axis=1)).sum(axis=1) < 0.0
     faces[wrong] = faces[wrong][:, [0, 2, 1]]
-    return Mesh(vertices.astype(np.float32), normals.astype(np.float32), faces, np.asarray(lines, dtype=np.float32))
+    rows = (np.ascontiguousarray(array, dtype=np.float32) for array in (vertices, normals))  # OpenGL takes rows only
+    return Mesh(*rows, faces, np.asarray(lines, dtype=np.float32))
 
 
 def pairs(line: Array) -> Array:

@@ -115,7 +115,7 @@ def lines_of(row: FindingRow, font: QFont) -> list[Line]:
     bold.setWeight(QFont.Weight.DemiBold)
     small.setPixelSize(SENTENCE_SIZE)
     small_bold.setPixelSize(SENTENCE_SIZE)
-    small_bold.setWeight(QFont.Weight.DemiBold)
+    small_bold.setWeight(QFont.Weight.DemiBold if row.pressable else QFont.Weight.Normal)
     texts = (
         Line(row.title, bold, "ink"),
         Line(row.sentence, small, "soft"),

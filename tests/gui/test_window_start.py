@@ -44,6 +44,11 @@ def window(qtbot, monkeypatch):
     made.deleteLater()
 
 
+def test_window_is_set_in_the_font_that_ships_with_it(window):
+    assert QApplication.font().family() == "Inter"
+    assert window.header.name.fontInfo().family() == "Inter"
+
+
 def test_importing_the_window_loads_nothing_heavy():
     code = f"import sys, studio.app; print([name for name in {HEAVY!r} if name in sys.modules])"
     done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, timeout=120, check=True)
