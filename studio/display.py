@@ -327,8 +327,9 @@ def orientation_at(path: BallPath, moment: Moment) -> Array:
 
 # -- what a person may take hold of ---------------------------------------------------------------
 class Grip(NamedTuple):
-    """A place that may be dragged: what it is (inlet, outlet, centre, point), its number, where (3,) m."""
+    """A place that may be dragged: of which element, what (inlet, outlet, centre, point), its number, where (3,) m."""
 
+    element: str
     role: str
     number: int
     place: Array
@@ -336,22 +337,22 @@ class Grip(NamedTuple):
 
 def grips_of(entry: Placed) -> list[Grip]:
     """Places of an element that may be dragged."""
-    found = []
+    found, key = [], entry.element.id
     if entry.meridian is not None and entry.origin is not None:
-        found.append(Grip("centre", 0, entry.origin))
+        found.append(Grip(key, "centre", 0, entry.origin))
     centre = centre_of(entry)
     if centre is not None:
-        found.append(Grip("centre", 0, centre))
-    found.append(Grip("inlet", 0, entry.inlet.position))
+        found.append(Grip(key, "centre", 0, centre))
+    found.append(Grip(key, "inlet", 0, entry.inlet.position))
     if entry.outlet is not None and entry.meridian is None:
-        found.append(Grip("outlet", 0, entry.outlet.position))
+        found.append(Grip(key, "outlet", 0, entry.outlet.position))
     points = getattr(entry.element, "points", ())
     if points and entry.curve is not None:
         level = entry.inlet.forward
         left = np.array([-level[1], level[0], 0.0])
         axes = np.stack([level, left, [0.0, 0.0, 1.0]])
         places = entry.inlet.position + np.array(points[:-1]).reshape(-1, 3) @ axes
-        found.extend(Grip("point", number, place) for number, place in enumerate(places))
+        found.extend(Grip(key, "point", number, place) for number, place in enumerate(places))
     return found
 
 

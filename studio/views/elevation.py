@@ -8,34 +8,35 @@ from PySide6.QtCore import QPointF, QRectF, Qt, Slot
 from PySide6.QtGui import QKeyEvent, QPainter
 from PySide6.QtWidgets import QWidget
 
+from engine.errors import TrundleError
 from engine.integrate.result import Regime
 from studio.display import (
     Array,
     BallPath,
     arrivals,
     finding_sample,
+    layout_of,
     levels_of,
-    losses_of,
     moment_at,
     path_of,
     regime_runs,
     shown_findings,
     time_at,
 )
-from studio.resources import USUAL
+from studio.dragging import raised
 from studio.theme import Theme
+from studio.views import elevation_words
 from studio.views.canvas import Canvas, Margins
+from studio.views.elevation_words import RIGHT_AXIS, RULER
 from studio.views.plan_words import length_words, write_about
-from studio.widgets.marks import MARK, draw_ball, draw_finding, draw_rest
+from studio.widgets.marks import GRIP, MARK, draw_ball, draw_finding, draw_grip, draw_rest
 from studio.widgets.strokes import (
-    Ink,
     Labels,
     Stroke,
     dotted,
     draw_path,
     draw_slip,
     draw_text,
-    font_of,
     path_colours,
     pen,
     polygon,
@@ -49,15 +50,9 @@ from studio.workspace import Workspace
 
 PATH_WIDTH = 3.0
 STALE = 0.35
-RULER = 28.0
-"""px from the lower edge: line on which the ticks of the elements stand."""
-RIGHT_AXIS = 60.0
-"""px kept on the right for heights."""
 GRID_STEP = 34.0
-READOUT_GAP = 8.0
 TIME_STEP = 0.02
 """s. One press of an arrow key."""
-CAUSES = {"slip": "slip", "rolling": "rolling", "spin": "spin", "air": "air", "impact": "impact"}
 
 
 class Name(NamedTuple):
@@ -80,17 +75,24 @@ class ElevationView(Canvas):
         self.setAccessibleDescription("Height and head over the way travelled; click or drag to move the time cursor.")
         self._path: BallPath | None = None
         self.names: list[Name] = []
+        self._held, self._lift, self._drag_number = "", 0.0, 0
+        self._take_design()
         self._take_roll()
         workspace.rolled.connect(self._take_roll)
-        workspace.designChanged.connect(self.redraw)
+        workspace.designChanged.connect(self._take_design)
         workspace.selectionChanged.connect(self.redraw)
         workspace.timeChanged.connect(self.update)
+
+    @Slot()
+    def _take_design(self, *_: Any) -> None:
+        self.layout_now = layout_of(self.workspace.design, self.workspace.roll)
+        self.redraw()
 
     @Slot()
     def _take_roll(self, *_: Any) -> None:
         empty = self._path is None
         self._path = path_of(self.workspace.roll)
-        self.fit() if self._fitted or empty else self.redraw()
+        self.fit() if (self._fitted and not self._held) or empty else self.redraw()
 
     def world_bounds(self) -> Array | None:
         """From the release to the end, from the lowest place to the highest head, m."""
@@ -123,8 +125,9 @@ class ElevationView(Canvas):
         painter.restore()
         self._paint_names(painter, path)
         self._paint_findings(painter, labels, path)
-        self._write_head(painter, labels, head)
-        self._write_losses(painter, path)
+        self._paint_grip(painter, labels)
+        elevation_words.write_head(painter, self, labels, head)
+        elevation_words.write_losses(painter, self, path)
         painter.setOpacity(1.0)
 
     def _paint_nothing(self, painter: QPainter) -> None:
@@ -174,6 +177,21 @@ class ElevationView(Canvas):
             at = self.point(float(path.developed[first]), float(path.place[first, 2]))
             draw_rest(painter, at, self.theme.colour("ink"))
 
+    def _paint_grip(self, painter: QPainter, labels: Labels) -> None:
+        """Square at the end of the selected element, with the height of its outlet."""
+        found = self.grip()
+        if found is None:
+            return
+        outlet = self.layout_now.find(found[0]).outlet
+        if outlet is None:
+            return
+        draw_grip(painter, found[1], self.theme, held=bool(self._held))
+        labels.take(QRectF(found[1].x() - GRIP, found[1].y() - GRIP, 2.0 * GRIP, 2.0 * GRIP))
+        words = length_words(float(outlet.position[2]), self.workspace.design.units, signed=True)
+        write_about(
+            painter, labels, found[1], words, small_ink(self.theme, self.font(), "accent", bold=True), GRIP + 4.0
+        )
+
     # -- words ------------------------------------------------------------------------------------
     def _paint_names(self, painter: QPainter, path: BallPath) -> None:
         """Ticks where the ball enters each element, names where there is room: the selected first, then from left."""
@@ -221,35 +239,39 @@ class ElevationView(Canvas):
                 words = finding_title(self.workspace, finding).split(":")[0].lower()
                 write_about(painter, labels, at, words, ink, MARK)
 
-    def _write_head(self, painter: QPainter, labels: Labels, head: Array) -> None:
-        """Name of the head line, above it where there is room."""
-        ink = small_ink(self.theme, self.font(), "second", bold=True)
-        size = text_size(ink.font, "head line")
-        corners = []
-        for share in (0.62, 0.75, 0.5, 0.38, 0.25, 0.88, 0.12):
-            x = float(head[0, 0] + share * (head[-1, 0] - head[0, 0]))
-            y = float(np.interp(x, head[:, 0], head[:, 1]))
-            corners += [QPointF(x, y - size[1] - 5.0)]
-        at = labels.place(size, corners)
-        if at is not None:
-            draw_text(painter, at, "head line", ink)
+    # -- the grip ---------------------------------------------------------------------------------
+    def grip(self) -> tuple[str, QPointF] | None:
+        """Element whose end can be dragged up and down, and where its grip is; None unless one element is selected."""
+        path, element = self._path, self.workspace.selected_element
+        if path is None or element is None:
+            return None
+        rows = np.flatnonzero(path.element == self.layout_now.find(element.id).index)
+        if len(rows) == 0:
+            return None
+        return element.id, self.point(float(path.developed[rows[-1]]), float(path.place[rows[-1], 2]))
 
-    def _write_losses(self, painter: QPainter, path: BallPath) -> None:
-        """Head lost and to what, and the exaggeration of heights, in the upper right corner."""
-        total, shares = losses_of(path)
-        units = self.workspace.design.units
-        parts = ", ".join(f"{CAUSES[cause]} {100.0 * share:.0f} %" for cause, share in shares)
-        lost = f"lost {length_words(total, units)} {units} of head: {parts}" if shares else ""
-        ink = small_ink(self.theme, self.font(), "second")
-        scale = f"heights × {self.exaggeration:.2g}"
-        soft = small_ink(self.theme, self.font())
-        right = self.width() - 12.0
-        width, height = text_size(soft.font, scale)
-        draw_text(painter, QPointF(right - width, 10.0), scale, soft)
-        room = right - width - 18.0 - 190.0
-        lost = lost if text_size(ink.font, lost)[0] <= room else lost.split(":")[0]
-        if text_size(ink.font, lost)[0] <= room:
-            draw_text(painter, QPointF(right - width - 18.0 - text_size(ink.font, lost)[0], 10.0), lost, ink)
+    def _hold_grip(self, at: QPointF) -> bool:
+        """Take hold of the grip when it is there."""
+        found = self.grip()
+        if found is None or (found[1] - at).manhattanLength() > 1.5 * GRIP:
+            return False
+        outlet = self.layout_now.find(found[0]).outlet
+        if outlet is None:
+            return False
+        self._held, self._drag_number = found[0], self._drag_number + 1
+        self._lift = float(outlet.position[2] - self.to_world(at)[1])
+        return True
+
+    def _raise(self, at: QPointF) -> None:
+        """Let grade or drop follow the grip; where that cannot be, the element stays as it is."""
+        height = float(self.to_world(at)[1]) + self._lift
+        try:
+            changed = raised(self.layout_now, self._held, height)
+        except TrundleError:
+            return
+        element = self.workspace.element(self._held)
+        words = f"drag height of {element.title if element is not None else self._held}"
+        self.workspace.edit(words, changed, f"raise {self._held} {self._drag_number}")
 
     # -- time -------------------------------------------------------------------------------------
     def paint_moving(self, painter: QPainter) -> None:
@@ -268,24 +290,7 @@ class ElevationView(Canvas):
         ]
         if path.regime[moment.sample] == int(Regime.FLIGHT):
             lines[1] = "in flight"
-        self._paint_readout(painter, at, lines)
-
-    def _paint_readout(self, painter: QPainter, at: QPointF, lines: list[str]) -> None:
-        """Box with figures beside the cursor, on the side and at the height where it covers least."""
-        first = Ink(self.theme.colour("ink"), font_of(self.font(), USUAL, bold=True))
-        second = small_ink(self.theme, self.font(), halo=False)
-        sizes = [text_size(ink.font, text) for ink, text in zip((first, second), lines, strict=True)]
-        width, height = max(size[0] for size in sizes) + 20.0, sizes[0][1] + sizes[1][1] + 14.0
-        left = at.x() + READOUT_GAP
-        if left + width > self.width() - RIGHT_AXIS:
-            left = at.x() - READOUT_GAP - width
-        top = self.height() - RULER - 10.0 - height if at.y() < 0.5 * self.height() else 36.0
-        box = QRectF(round(left) + 0.5, round(top) + 0.5, round(width), round(height))
-        painter.setPen(pen(self.theme.colour("line")))
-        painter.setBrush(self.theme.colour("panel"))
-        painter.drawRoundedRect(box, 3.0, 3.0)
-        draw_text(painter, box.topLeft() + QPointF(10.0, 6.0), lines[0], first)
-        draw_text(painter, box.topLeft() + QPointF(10.0, 8.0 + sizes[0][1]), lines[1], second)
+        elevation_words.paint_readout(painter, self, at, lines)
 
     def name_at(self, at: QPointF) -> str:
         """Id of the element whose name or tick is at a place of the screen; empty for none."""
@@ -297,16 +302,26 @@ class ElevationView(Canvas):
         return ""
 
     def take_hold(self, at: QPointF) -> bool:
-        """Scrub, unless a name was pressed."""
+        """Take hold of the grip, else scrub, unless a name was pressed."""
         if self._path is None or self.name_at(at):
             return False
+        if self._hold_grip(at):
+            return True
         self.dragged(at)
         return True
 
     def dragged(self, at: QPointF) -> None:
-        """Move the time cursor to the way travelled under the pointer."""
-        if self._path is not None:
+        """Move the grip, else the time cursor to the way travelled under the pointer."""
+        if self._held:
+            self._raise(at)
+        elif self._path is not None:
             self.workspace.set_time(time_at(self._path, float(self.to_world(at)[0])))
+
+    def let_go(self, at: QPointF) -> None:
+        """Let go of the grip, and show all of what it made."""
+        if self._held:
+            self._held = ""
+            self.fit() if self._fitted else self.redraw()
 
     def clicked(self, at: QPointF) -> None:
         """Select the element whose name was clicked."""

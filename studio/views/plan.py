@@ -7,6 +7,7 @@ from PySide6.QtCore import QPointF, QRectF, Qt, Slot
 from PySide6.QtGui import QBrush, QPainter, QPolygonF
 from PySide6.QtWidgets import QWidget
 
+from engine.errors import TrundleError
 from studio.display import (
     Array,
     BallPath,
@@ -19,6 +20,7 @@ from studio.display import (
     path_of,
     shown_findings,
 )
+from studio.dragging import dragged
 from studio.outlines import Outline, nearest_outline, outlines_of
 from studio.theme import Theme
 from studio.views import plan_words
@@ -46,6 +48,8 @@ if TYPE_CHECKING:
 
 HALO = 3.5
 """px of sheet colour on both sides of what passes over something."""
+DRAG_STEP = 3.0
+"""px. A drag rounds lengths to a round one of about this size."""
 REACH = 7.0
 """px within which a click finds an element."""
 PATH_WIDTH = 2.0
@@ -64,6 +68,8 @@ class PlanView(Canvas):
         self._outlines: list[Outline] = []
         self._path: BallPath | None = None
         self._hover: str = ""
+        self._held: Grip | None = None
+        self._drag_number = 0
         self.grips: list[tuple[Grip, QPointF]] = []
         self._take_design()
         self._take_roll()
@@ -114,8 +120,8 @@ class PlanView(Canvas):
         self._take_grips(labels)
         plan_words.write_selected(painter, self, labels)
         self._paint_findings(painter, labels)
-        for _, at in self.grips:
-            draw_grip(painter, at, self.theme)
+        for grip, at in self.grips:
+            draw_grip(painter, at, self.theme, held=self._is_held(grip))
         self._paint_scale(painter, labels)
         plan_words.write_site(painter, self, labels)
         plan_words.write_names(painter, self, labels)
@@ -210,6 +216,10 @@ class PlanView(Canvas):
                 self.grips.append((grip, at))
                 labels.take(QRectF(at.x() - GRIP, at.y() - GRIP, 2 * GRIP, 2 * GRIP))
 
+    def _is_held(self, grip: Grip) -> bool:
+        """Whether a grip is the one that is dragged."""
+        return self._held is not None and self._held[:3] == grip[:3]
+
     def _paint_scale(self, painter: QPainter, labels: Labels) -> None:
         """Bar of the colours of speeds, lower right."""
         if self._path is None:
@@ -256,6 +266,31 @@ class PlanView(Canvas):
             if QRectF(place.x() - GRIP, place.y() - GRIP, 2 * GRIP, 2 * GRIP).contains(at):
                 return grip
         return None
+
+    def take_hold(self, at: QPointF) -> bool:
+        """Take hold of a grip."""
+        self._held = self.grip_at(at)
+        self._drag_number += 1
+        return self._held is not None
+
+    def dragged(self, at: QPointF) -> None:
+        """Let the element follow the grip; where it cannot, it stays as it is."""
+        grip = self._held
+        if grip is None:
+            return
+        step = self.grid_step(0, DRAG_STEP)
+        try:
+            changed = dragged(self.layout_now, grip, self.to_world(at), step)
+        except TrundleError:
+            return
+        element = self.workspace.element(grip.element)
+        words = f"drag {grip.role} of {element.title if element is not None else grip.element}"
+        self.workspace.edit(words, changed, f"drag {grip.element} {grip.role} {grip.number} {self._drag_number}")
+
+    def let_go(self, at: QPointF) -> None:
+        """Let go of the grip."""
+        self._held = None
+        self.redraw()
 
     def clicked(self, at: QPointF) -> None:
         """Select what is under the pointer."""

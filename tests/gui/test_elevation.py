@@ -119,3 +119,22 @@ def test_is_drawn_in_both_themes_and_sizes(qtbot, rolled, theme, size):
     image = made.grab().toImage()
     assert image.width() == size[0]
     assert len({image.pixel(x, y) for x in range(0, size[0], 3) for y in range(0, size[1], 3)}) > 10
+
+
+def test_grip_dragged_down_makes_the_element_steeper_in_one_step(view, qtbot):
+    view.workspace.select(["h1"])
+    view.grab()
+    key, at = view.grip()
+    assert key == "h1"
+    before, time = view.workspace.design, view.workspace.time
+    drop = before.runs[0].element("h1").drop
+    start, end = at.toPoint(), at.toPoint() + QPoint(0, 30)
+    qtbot.mousePress(view, Qt.MouseButton.LeftButton, pos=start)
+    for y in (10, 20, 30):
+        qtbot.mouseMove(view, start + QPoint(0, y))
+    qtbot.mouseRelease(view, Qt.MouseButton.LeftButton, pos=end)
+    lowered = view.workspace.design.runs[0].element("h1").drop - drop
+    assert lowered == pytest.approx(30.0 / view.scale[1], abs=2.0 / view.scale[1] + 6e-4)
+    assert view.workspace.time == time
+    view.workspace.undo_stack.undo()
+    assert view.workspace.design is before

@@ -237,3 +237,40 @@ def test_labels_keep_off_each_other_and_off_lines():
     assert labels.place((30, 12), corners, needed=False) is None
     assert labels.place((30, 12), corners) == corners[0]
     assert labels.place((30, 12), corners) is None
+
+
+def drag(qtbot, view, start, end):
+    qtbot.mousePress(view, Qt.MouseButton.LeftButton, pos=start)
+    for share in (0.25, 0.5, 0.75, 1.0):
+        qtbot.mouseMove(view, start + (end - start) * share)
+    qtbot.mouseRelease(view, Qt.MouseButton.LeftButton, pos=end)
+
+
+def test_grip_dragged_edits_the_element_as_one_step(view, qtbot):
+    view.workspace.select(["b1"])
+    view.grab()
+    before = view.workspace.design
+    at = next(at for grip, at in view.grips if grip.role == "centre").toPoint()
+    drag(qtbot, view, at, at - QPoint(0, round(0.05 * view.scale[1])))
+    assert view.workspace.design.runs[0].element("b1").radius == pytest.approx(0.2, abs=0.004)
+    assert view.workspace.selection == ("b1",)
+    view.workspace.undo_stack.undo()
+    assert view.workspace.design is before
+    assert not view.workspace.undo_stack.canUndo()
+
+
+def test_two_drags_are_two_steps(view, qtbot):
+    view.workspace.select(["s1"])
+    for _ in range(2):
+        view.grab()
+        at = next(at for grip, at in view.grips if grip.role == "outlet").toPoint()
+        drag(qtbot, view, at, at + QPoint(40, 0))
+    assert view.workspace.undo_stack.count() == 2
+
+
+def test_drag_beyond_what_is_allowed_leaves_the_last_that_was(view, qtbot):
+    view.workspace.select(["s1"])
+    view.grab()
+    at = next(at for grip, at in view.grips if grip.role == "outlet").toPoint()
+    drag(qtbot, view, at, QPoint(-4000, at.y()))
+    assert view.workspace.design.runs[0].element("s1").length >= 1e-3
