@@ -80,11 +80,15 @@ class Ribbon(NamedTuple):
     source: NDArray[np.int64]
 
 
-def ribbon(points: Array, step: float) -> Ribbon:
-    """Ribbon along a line (n, 3); `step` is the length of the short step, m (a thousandth of what is shown)."""
+def ribbon(points: Array, step: float, shown: NDArray[np.bool_] | None = None) -> Ribbon:
+    """Ribbon along a line (n, 3); `step` is the length of the short step, m (a thousandth of what is shown).
+
+    Where `shown` (n,) is False, the piece from there to the next point is left out.
+    """
     along = np.gradient(points, axis=0) if len(points) > 1 else np.zeros_like(points)
     number = np.arange(len(points), dtype=np.uint32)
-    return _ribbon(points, _short(along, step), np.stack([number[:-1], number[1:]], axis=1))
+    links = np.stack([number[:-1], number[1:]], axis=1)
+    return _ribbon(points, _short(along, step), links if shown is None else links[shown[:-1]])
 
 
 def ribbons(pieces: Array, step: float) -> Ribbon:

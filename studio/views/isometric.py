@@ -23,8 +23,10 @@ STEEPEST = math.radians(89.0)
 PATH_WIDTH = 1.8
 SEAM = 0.7
 """px. Panels are drawn this much larger, so that no paper shows between them."""
-SHADES = 8
+SHADES = 40
 """Steps of light; each has its brushes ready."""
+LIGHT_LIGHT, DARK_LIGHT = (0.84, 1.05), (0.72, 1.42)
+"""Share of the fill that a panel shows in the least and in the most light, on a light and on a dark sheet."""
 DOTS = np.concatenate([np.eye(3), -np.eye(3)])
 """Places on the ball that show how it turns."""
 
@@ -123,11 +125,12 @@ class IsometricView(Canvas):
     def _brushes(self) -> list[list[QColor]]:
         """Fills by light, plain and selected."""
         found = []
+        low, high = DARK_LIGHT if self.theme.dark else LIGHT_LIGHT
         for token in ("tube_fill", "accent_bg"):
             base = self.theme.colour(token)
             row = []
             for step in range(SHADES):
-                shade = 0.82 + 0.24 * step / (SHADES - 1)
+                shade = low + (high - low) * step / (SHADES - 1)
                 parts = [min(1.0, part * shade) for part in base.getRgbF()[:3]]
                 row.append(QColor.fromRgbF(*parts))
             found.append(row)

@@ -63,6 +63,7 @@ void main() {
     float side = 2.0 * a_color.a - 1.0;
     float reach = 0.5 * u_view[2] + 1.0;
     here.xy += side * reach * vec2(-ahead.y, ahead.x) / half_size * here.w;
+    here.z -= 0.0004 * here.w;
     v_line = vec2(side * reach, 0.5 * u_view[2] + 0.5);
     v_color = a_color;
     gl_Position = here;

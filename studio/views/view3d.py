@@ -4,19 +4,20 @@ import math
 from typing import Any
 
 import numpy as np
-from OpenGL import GL
-from pyqtgraph.opengl import GLMeshItem, GLViewWidget, MeshData
+from pyqtgraph.opengl import GLMeshItem, GLViewWidget
 from PySide6.QtCore import QPointF, QSize, Qt, Slot
 from PySide6.QtGui import QKeyEvent, QMatrix4x4, QMouseEvent, QQuaternion, QResizeEvent, QVector3D, QWheelEvent
 from PySide6.QtWidgets import QFrame, QHBoxLayout, QLabel, QToolButton, QVBoxLayout, QWidget
 
+from engine.integrate.result import Regime
 from engine.placement import Layout
 from studio.display import Array, BallPath, layout_of, levels_of, moment_at, orientation_at, path_of, spaced
 from studio.meshes import ball_mesh, hit
-from studio.stage import Group, Ribbon, ribbon, ribbons, stage_of
+from studio.stage import Group, ribbon, ribbons, stage_of
 from studio.theme import Theme
+from studio.views.gl_items import BLEND, ClearMesh, Lines, fill
 from studio.views.isometric import IsometricView
-from studio.views.shading import gl_available, line_shader, samples, shader
+from studio.views.shading import gl_available, samples, shader
 from studio.widgets.strokes import path_colours
 from studio.workspace import Workspace
 
@@ -29,64 +30,18 @@ CLICK_REACH = 3.0
 MOST_POINTS, SPACING = 6000, 400.0
 """Points of the path shown in space, and how many of them lie along the largest side: closer ones fade to nothing."""
 THOUSAND = 1000.0
+DASHES = 160.0
+"""Dashes and gaps of flight along the largest side."""
 FREE = 1.08
 """Share of the distance added, so that nothing touches the border."""
 CLEAR, CHOSEN = 0.22, 0.34
 """Opacity of what one looks through, plain and selected."""
 PATH_WIDTH, RIM_WIDTH = 2.2, 1.0
 
-BLEND: dict[Any, Any] = {
-    GL.GL_DEPTH_TEST: True,
-    GL.GL_BLEND: True,
-    "glBlendFuncSeparate": (GL.GL_SRC_ALPHA, GL.GL_ONE_MINUS_SRC_ALPHA, GL.GL_ONE, GL.GL_ONE_MINUS_SRC_ALPHA),
-}
-
 
 def make_view3d(workspace: Workspace, theme: Theme) -> QWidget:
     """Make the view in space: with OpenGL where there is one, else drawn."""
     return SpaceView(workspace, theme) if gl_available() else IsometricView(workspace, theme)
-
-
-class ClearMesh(GLMeshItem):
-    """Surface one looks through: far sides first, then near sides, without hiding what is inside."""
-
-    def paint(self) -> None:
-        """Draw in two passes."""
-        GL.glEnable(GL.GL_CULL_FACE)
-        GL.glDepthMask(GL.GL_FALSE)
-        for hidden in (GL.GL_FRONT, GL.GL_BACK):
-            GL.glCullFace(hidden)
-            super().paint()
-        GL.glDepthMask(GL.GL_TRUE)
-        GL.glDisable(GL.GL_CULL_FACE)
-
-
-class Lines(GLMeshItem):
-    """Lines of an even width on screen."""
-
-    def __init__(self, name: str, width: float) -> None:
-        super().__init__(shader=line_shader(name), smooth=True, glOptions=BLEND)
-        self.line_width = width
-
-    def fill(self, lines: Ribbon, colours: np.ndarray) -> None:
-        """Take lines and the colour (k, 3) of each of their rows."""
-        self.setVisible(len(lines.faces) > 0)
-        if len(lines.faces) == 0:
-            return
-        rgba = np.concatenate([colours[lines.source, :3], lines.side[:, None]], axis=1).astype(np.float32)
-        mesh = MeshData(vertexes=lines.points, faces=lines.faces, vertexColors=rgba)
-        mesh._vertexNormals = lines.ahead
-        self.setMeshData(meshdata=mesh)
-
-    def paint(self) -> None:
-        """Draw for the present size of the view."""
-        view = self.view()
-        self.shader()["u_view"] = [
-            0.5 * view.deviceWidth(),
-            0.5 * view.deviceHeight(),
-            self.line_width * view.devicePixelRatioF(),
-        ]
-        super().paint()
 
 
 class Space(GLViewWidget):
@@ -111,7 +66,7 @@ class Space(GLViewWidget):
         self._opaque = GLMeshItem(shader=shader(), smooth=True, glOptions="opaque")
         self._clear = ClearMesh(shader=shader(), smooth=True, glOptions=BLEND)
         self._ball = GLMeshItem(shader=shader(), smooth=True, glOptions="opaque")
-        for order, item in enumerate((self._opaque, self._ball, self._path_line, self._rims, self._clear)):
+        for order, item in enumerate((self._opaque, self._ball, self._clear, self._rims, self._path_line)):
             item.setDepthValue(order)
             self.addItem(item)
 
@@ -132,8 +87,8 @@ class Space(GLViewWidget):
         """Colour everything anew: theme, selection, speeds."""
         self.setBackgroundColor(self.theme.colour("sheet"))
         stage = self._stage
-        _fill(self._opaque, stage.opaque, self._colours(stage.opaque.element, "tube_fill", 1.0))
-        _fill(self._clear, stage.clear, self._colours(stage.clear.element, "tube", CLEAR))
+        fill(self._opaque, stage.opaque, self._colours(stage.opaque.element, "tube_fill", 1.0))
+        fill(self._clear, stage.clear, self._colours(stage.clear.element, "tube", CLEAR))
         self._rims.fill(ribbons(stage.rims, self._step), self._colours(np.repeat(stage.rim_element, 2), "tube", 1.0))
         self._colour_path()
         self._colour_ball()
@@ -155,13 +110,16 @@ class Space(GLViewWidget):
         kept = spaced(path.developed, max(float(path.developed[-1]) / MOST_POINTS, self._step * THOUSAND / SPACING))
         levels = levels_of(path.speed[kept], path.top_speed)
         table = np.array([colour.getRgbF() for colour in path_colours(self.theme.dark)], dtype=np.float32)
-        self._path_line.fill(ribbon(path.place[kept], self._step), table[levels])
+        dash = np.floor(path.developed[kept] / (self._step * THOUSAND / DASHES)) % 2 == 0
+        shown = dash | (path.regime[kept] != int(Regime.FLIGHT))
+        self._path_line.fill(ribbon(path.place[kept], self._step, shown), table[levels])
 
     def _colour_ball(self) -> None:
         mesh, light = ball_mesh()
         plain, band = (self.theme.colour(token).getRgbF() for token in ("ink", "accent"))
         colours = np.where(light[:, None], np.array(band), np.array(plain)).astype(np.float32)
-        _fill(self._ball, Group(mesh, np.zeros(0, dtype=np.int64)), colours)
+        fill(self._ball, Group(mesh, np.zeros(0, dtype=np.int64)), colours)
+        self._ball.setVisible(self._path is not None)
 
     def show_time(self) -> None:
         """Put the ball where it is, turned as it is."""
@@ -335,6 +293,10 @@ class SpaceView(QFrame):
             self._fitted = True
             self.space.fit()
 
+    def element_at(self, at: QPointF) -> str:
+        """Id of the element under a place of the sheet; empty for none."""
+        return self.space.element_at(QPointF(self.space.mapFrom(self, at.toPoint())))
+
     @Slot()
     def fit(self) -> None:
         """Show everything."""
@@ -360,14 +322,3 @@ class SpaceView(QFrame):
     def _set_follow(self, on: bool) -> None:
         self.space.follow = on
         self.space.show_time()
-
-
-def _fill(item: GLMeshItem, shown: Group, colours: np.ndarray) -> None:
-    """Give an item a mesh with the normals it brings; without triangles it is not shown."""
-    mesh = shown.mesh
-    item.setVisible(len(mesh.faces) > 0)
-    if len(mesh.faces) == 0:
-        return
-    taken = MeshData(vertexes=mesh.vertices, faces=mesh.faces, vertexColors=colours)
-    taken._vertexNormals = mesh.normals
-    item.setMeshData(meshdata=taken)

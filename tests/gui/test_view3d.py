@@ -5,7 +5,7 @@ import math
 import numpy as np
 import pytest
 from PySide6.QtCore import QPoint, QPointF, Qt
-from PySide6.QtGui import QGuiApplication
+from PySide6.QtGui import QGuiApplication, QVector3D
 
 from engine.simulate import roll
 from studio.display import moment_at, path_of
@@ -52,6 +52,32 @@ def test_view_is_drawn_where_there_is_no_gl(qtbot, workspace):
     if QGuiApplication.platformName() == "offscreen":
         assert not gl_available()
     assert samples() in (0, 4)
+
+
+def place_in(made, place):
+    """Place on the sheet of a point in space, in either view."""
+    if isinstance(made, IsometricView):
+        return on_screen(made, place)
+    space = made.space
+    view = space.getViewport()
+    seen = (space.projectionMatrix(view, view) * space.viewMatrix()).map(QVector3D(*np.asarray(place).tolist()))
+    at = QPointF(0.5 * (1.0 + seen.x()) * space.width(), 0.5 * (1.0 - seen.y()) * space.height())
+    return QPointF(space.mapTo(made, at.toPoint()))
+
+
+def test_view_finds_the_element_under_a_place(qtbot, workspace):
+    made = make_view3d(workspace, workspace.theme)
+    qtbot.addWidget(made)
+    made.resize(500, 400)
+    made.show()
+    made.fit()
+    made.grab()
+    layout = workspace.roll.layout
+    for element in ("s1", "b1", "s2"):
+        curve = layout.find(element).curve
+        middle = curve[len(curve) // 2, 1:4] if len(curve) > 2 else curve[:, 1:4].mean(axis=0)
+        assert made.element_at(place_in(made, middle)) == element
+    assert made.element_at(QPointF(4.0, 396.0)) == ""
 
 
 def test_axes_are_square_and_right_handed(view):
