@@ -152,11 +152,19 @@ def length_row() -> Row:
     """Return the cost per simulated second with 1 000 segments over that with 10, the same first stretch rolled."""
     short, long = long_design(10), long_design(1000)
     until = 0.9 * roll(short).duration
-    return row("cost per simulated s, 1 000 segments to 10", kernel_time(long, until) / kernel_time(short, until), "ratio", 1.3, "lower")
+    return row(
+        "cost per simulated s, 1 000 segments to 10",
+        kernel_time(long, until) / kernel_time(short, until),
+        "ratio",
+        1.3,
+        "lower",
+    )
 
 
 def edit_rows() -> list[Row]:
-    """Return the times of a whole re-roll and of one after an edit of the last segment, on the wall-size demonstration."""
+    """Return the times of a whole re-roll and of one after an edit of the last segment,
+    on the wall-size demonstration.
+    """
     design = load(DEMONSTRATION)
     elements = design.runs[0].elements
     first, last = editable(elements), len(elements) - 1 - editable(tuple(reversed(elements)))
@@ -215,7 +223,9 @@ def window_rows() -> list[Row]:
     loaded = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
     command = [sys.executable, "-m", "studio.app", "--time-to-usable"]
     subprocess.run(command, capture_output=True, check=True)
-    spans = [float(subprocess.run(command, capture_output=True, text=True, check=True).stdout.split()[-1]) for _ in range(3)]
+    spans = [
+        float(subprocess.run(command, capture_output=True, text=True, check=True).stdout.split()[-1]) for _ in range(3)
+    ]
     return [
         row("heavy packages loaded by importing the studio", float(loaded.stdout), "packages", 0.0, "lower"),
         row("window usable, warm", min(spans), "s", 2.0, "lower"),

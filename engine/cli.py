@@ -6,6 +6,7 @@ Exit codes: 0 clean, 1 findings (or a failed check), 2 unusable input, 130 stopp
 import argparse
 import importlib.util
 import json
+import math
 import os
 import sys
 from collections.abc import Callable, Sequence
@@ -177,7 +178,7 @@ def _print_finding(finding: Finding, design: Design) -> None:
     """Print one finding: how bad, where, what, and what cures it."""
     entry = finding.as_json()
     place = entry["segment"] or entry["where"] or "design"
-    along = "" if entry["s_m"] is None else f" at {format_length(entry['s_m'], design.units)}"
+    along = f" at {format_length(finding.s, design.units)}" if math.isfinite(finding.s) else ""
     print(f"  {entry['severity']}: {place}{along}: {entry['sentence']}")
     if entry["cure"]:
         print(f"    Cure: {entry['cure']}")

@@ -1,6 +1,7 @@
 """The walls of one placed element as patches, and what each boundary of theirs leads to.
 
-An element adds its patches in a fixed order (wall, lips, edges), so an edit further down does not renumber what comes before.
+An element adds its patches in a fixed order (wall, lips, edges), so an edit further down does not renumber what comes
+before.
 """
 
 import math
@@ -49,7 +50,8 @@ HALF_TURN = math.pi
 class Walls(NamedTuple):
     """Patches of one element: those that carry the ball in order, lips (right, left), all of them.
 
-    `mouth` is the edge at the inlet, `end` the edge at the outlet (-1: none); `way_on` is the link slot of `end` that leads on.
+    `mouth` is the edge at the inlet, `end` the edge at the outlet (-1: none); `way_on` is the link slot of `end` that
+    leads on.
     """
 
     parts: tuple[int, ...]
@@ -110,7 +112,9 @@ def is_narrower(entry: Placed, other: Placed) -> bool:
 
 
 def _stands_out(entry: Placed, before: Placed) -> bool:
-    """Whether the inlet of a segment has an edge: after a wider segment, or after anything that does not end flush with it."""
+    """Whether the inlet of a segment has an edge: after a wider segment,
+    or after anything that does not end flush with it.
+    """
     return is_narrower(entry, before) if is_segment(before) else not _flush(before, entry)
 
 
@@ -167,7 +171,8 @@ def _add_ring(patches: PatchList, entry: Placed, inside: int, which: int, tag: T
 def _add_way_out(patches: PatchList, outlet: tuple[Array, Array], radius: float, tag: Tag) -> None:
     """Add a catching disc beyond the last outlet, for a ball that leaves it in flight.
 
-    It stands one radius of the bore further on: a ball that rolls has crossed the end of its wall before it touches the disc.
+    It stands one radius of the bore further on: a ball that rolls has crossed the end of its wall before it touches
+    the disc.
     """
     position, ahead = outlet
     u = cross(ahead, np.eye(3)[int(np.argmin(np.abs(ahead)))])
@@ -301,8 +306,8 @@ def _join_segments(patches: PatchList, walls: Walls, beyond: Walls) -> None:
 def _let_through(patches: PatchList, walls: Walls, passed: tuple[int, ...]) -> None:
     """Let an inlet pass through the wall of the vessel it leads into.
 
-    What is linked to a patch is not in the way of a ball on it; the links of hole and disc mean nothing on a swept patch, so they
-    hold the walls to be passed.
+    What is linked to a patch is not in the way of a ball on it; the links of hole and disc mean nothing on a swept
+    patch, so they hold the walls to be passed.
     """
     for patch in walls.patches:
         for slot, wall in zip((HOLE, DISC), passed, strict=False):

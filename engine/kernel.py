@@ -71,7 +71,8 @@ def kernel(function: Function) -> Function:
     """Compile `function`: no Python objects, no lock held, division by zero gives inf, cached on disk.
 
     Without reference counting (`_nrt=False`): a kernel makes no arrays. Counting the references of the arrays of a
-    scene took three quarters of the time of a step (measured: rates of one contact 1.08 microseconds with, 0.27 without).
+    scene took three quarters of the time of a step (measured: rates of one contact 1.08 microseconds with, 0.27
+    without).
     """
     compiled: Function = numba.njit(cache=True, nogil=True, error_model="numpy", _nrt=False)(function)
     return compiled

@@ -1,7 +1,7 @@
 """Design to Layout: where every element stands.
 
-Elements chain: each starts where the one before ends. Centrelines join, so two bores that differ leave a step at the invert;
-a grade that differs from what arrives leaves a kink. Both are found later, not refused here.
+Elements chain: each starts where the one before ends. Centrelines join, so two bores that differ leave a step at the
+invert; a grade that differs from what arrives leaves a kink. Both are found later, not refused here.
 """
 
 import math
@@ -33,7 +33,9 @@ UP = np.array([0.0, 0.0, 1.0])
 
 
 class Plate(NamedTuple):
-    """Top face of a deck or tray: middle of its near edge, unit vectors along and to the left, true length and width, m."""
+    """Top face of a deck or tray: middle of its near edge, unit vectors along and to the left,
+    true length and width, m.
+    """
 
     origin: Array
     along: Array
@@ -54,14 +56,15 @@ class Placed:
         Id of its run.
     element : Element
     inlet, outlet : Pose
-        Centreline where it starts and ends, `down` not banked. No outlet: nothing leaves (tray, vessel with a closed bottom).
+        Centreline where it starts and ends, `down` not banked. No outlet: nothing leaves (tray, vessel with a closed
+        bottom).
     curve : (n, 16) or None
         Centreline of a segment, banked.
     meridian : (p, 7) or None
         Meridian of a vessel, z along `axis` from `origin`; at jumps of curvature two knots share one s.
     origin, axis : (3,) or None
-        Vessel: middle of the rim plane (dome: its top) and unit axis pointing out of the mouth. Plate: middle of its near edge and
-        its normal.
+        Vessel: middle of the rim plane (dome: its top) and unit axis pointing out of the mouth. Plate: middle of its
+        near edge and its normal.
     side : int
         Vessel: +1 ball on the left of the meridian, -1 on the right; else 0.
     bore : float or None

@@ -32,7 +32,10 @@ FREE_FALL = 1.0
 
 
 class Surroundings(NamedTuple):
-    """Gravity (3,) m/s2; air density kg/m3 (0: none) and viscosity Pa s; drag coefficient (negative: by Reynolds number); lift 0 or 1."""
+    """Gravity (3,) m/s2; air density kg/m3 (0: none) and viscosity Pa s.
+
+    Drag coefficient (negative: by Reynolds number); lift 0 or 1.
+    """
 
     gravity: tuple[float, float, float] = (0.0, 0.0, -STANDARD_GRAVITY)
     air_density: float = AIR_DENSITY
@@ -46,7 +49,9 @@ ROOM = Surroundings()
 
 
 class Built(NamedTuple):
-    """What the kernels need for one run, and `patches`: for each entry of `layout.placed` the patches it owns (others: none)."""
+    """What the kernels need for one run, and `patches`: for each entry of `layout.placed` the patches it owns
+    (others: none).
+    """
 
     scene: Scene
     ball: BallParams
@@ -117,7 +122,10 @@ def _materials(design: Design, pair: Pair) -> tuple[Material | None, Material | 
 
 @lru_cache(maxsize=256)
 def _law(pair: Pair, ball: Material | None, wall: Material | None) -> Law:
-    """Numbers of a pair; without a modulus of its own it comes from the two materials, and is 0 where those do not say."""
+    """Numbers of a pair.
+
+    Without a modulus of its own it comes from the two materials, and is 0 where those do not say.
+    """
     modulus = pair.contact_modulus
     if modulus is None and ball is not None and wall is not None:
         modulus = contact_modulus(ball, wall)

@@ -1,7 +1,8 @@
 """From one element of the document to its curve or meridian, in its own axes.
 
-A segment is drawn from the origin with heading +x and only turned about the vertical when it is placed, so what is kept in the
-caches below stays valid while the rest of the run is edited. Arrays that come from here are shared and must not be written to.
+A segment is drawn from the origin with heading +x and only turned about the vertical when it is placed, so what is
+kept in the caches below stays valid while the rest of the run is edited. Arrays that come from here are shared and
+must not be written to.
 """
 
 import math
@@ -40,8 +41,8 @@ from engine.model.elements import (
 CACHE_SIZE = 4096
 """Shapes kept: some ten edits of a design of 400 elements. A curve takes about 10 kB."""
 ENTRY_DIGITS = 13
-"""Directions at an inlet are rounded to this many decimals before they name a shape, so that rounding noise of a turned copy
-does not make a new one; it moves the end of a 10 m element by 1e-12 m at most."""
+"""Directions at an inlet are rounded to this many decimals before they name a shape, so that rounding noise of a
+turned copy does not make a new one; it moves the end of a 10 m element by 1e-12 m at most."""
 
 Entry = tuple[float, ...]
 """Tangent and `down` at an inlet, turned so that the heading is +x; empty for elements that bring their own grade."""
@@ -94,7 +95,10 @@ def _centreline(element: Segment, start: Pose) -> Array:
 
 @lru_cache(maxsize=CACHE_SIZE)
 def lips(element: Segment, entry: Entry) -> tuple[Array, Array]:
-    """Tables of a trough's lips, right (negative wall angle) and left; the trough lies at wall angle -pi/2 and +pi/2 of them."""
+    """Tables of a trough's lips, right (negative wall angle) and left.
+
+    The trough lies at wall angle -pi/2 and +pi/2 of them.
+    """
     section = element.section
     if not isinstance(section, Trough):
         raise DesignError(f'"{element.title}" is a tube and has no lips; ask only troughs for them.')
@@ -111,10 +115,14 @@ def _shared(table: Array) -> Array:
     return table
 
 
-# -- vessels: z along the axis from the rim plane (dome: from its top), negative below ------------------------------------------
+# -- vessels: z along the axis from the rim plane (dome: from its top), negative below
+# ------------------------------------------
 @lru_cache(maxsize=CACHE_SIZE)
 def meridian(element: Vessel) -> Array:
-    """Meridian (p, 7) of a vessel, the way the ball goes; at jumps of curvature two knots share one s (`smooth_parts`)."""
+    """Meridian (p, 7) of a vessel, the way the ball goes.
+
+    At jumps of curvature two knots share one s (`smooth_parts`).
+    """
     match element:
         case Funnel():
             return _shared(_funnel(element))
@@ -147,7 +155,9 @@ def _funnel(element: Funnel) -> Array:
 
 
 def _stretched(points: tuple[tuple[float, float], ...], rim: tuple[float, float], throat: tuple[float, float]) -> Array:
-    """Points from rim to throat, each axis stretched so that the last given lies on the rim and the first on the throat."""
+    """Points from rim to throat, each axis stretched so that the last given lies on the rim and the first on the
+    throat.
+    """
     drawn = np.array(points)[::-1]
     share = (drawn - drawn[-1]) / (drawn[0] - drawn[-1])
     return np.asarray(np.array(throat) + share * (np.array(rim) - np.array(throat)))

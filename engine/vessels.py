@@ -11,7 +11,9 @@ from engine.geometry.pose import Array, Pose, cross, pose_at, pose_pointing_down
 from engine.model.elements import Dome, Funnel, Vessel, Well
 
 ENTRY_CLEARANCE = 5e-4
-"""m. An inlet ends this far off the wall of the vessel it leads into, measured from the bore: the ball is set down, not jammed."""
+"""m. An inlet ends this far off the wall of the vessel it leads into, measured from the bore:
+the ball is set down, not jammed.
+"""
 VERTICAL = 1e-9
 """Plan part of a unit tangent below which it has no heading of its own."""
 UP = np.array([0.0, 0.0, 1.0])
@@ -42,9 +44,9 @@ def entry_length(element: Vessel, bore: float) -> float:
 def mouth(element: Vessel, pose: Pose, bore: float, axis: Array) -> Array:
     """Middle of the rim plane so that the bore stands inside, just off the wall, heading along the parallel circle.
 
-    With e the unit vector from the axis to the inlet: inlet = origin + rho e + z axis, where (rho, z) lies off the meridian by the
-    bore's radius and a clearance. A dip of the path below level by angle i, in a wall whose meridian has the plan share cos b,
-    turns the heading inward by atan(tan i cos b).
+    With e the unit vector from the axis to the inlet: inlet = origin + rho e + z axis, where (rho, z) lies off the
+    meridian by the bore's radius and a clearance. A dip of the path below level by angle i, in a wall whose meridian
+    has the plan share cos b, turns the heading inward by atan(tan i cos b).
     """
     s = np.array([entry_length(element, bore)])
     point, slope, _ = profiles.at_length(shapes.meridian(element), s)
@@ -60,7 +62,9 @@ def mouth(element: Vessel, pose: Pose, bore: float, axis: Array) -> Array:
 
 
 def _towardaxis_of(pose: Pose, axis: Array, hand: int) -> Array:
-    """Unit vector across `axis` from the inlet to it: hand (axis x t), or where t runs along the axis the left of travel."""
+    """Unit vector across `axis` from the inlet to it: hand (axis x t),
+    or where t runs along the axis the left of travel.
+    """
     upright = abs(axis[2]) > 1.0 - 1e-12
     across = cross(axis, pose.forward if upright else pose.tangent)
     size = math.sqrt(across @ across)

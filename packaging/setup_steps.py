@@ -1,7 +1,7 @@
 """Set-up shared by start.py and test.py: own .venv, pinned packages, system libraries, kernels.
 
-Standard library only. Every step says what it does, is safe to run again, and is skipped when nothing changed: a stamp in
-.venv holds the hash of what was installed, written only after everything succeeded.
+Standard library only. Every step says what it does, is safe to run again, and is skipped when nothing changed: a stamp
+in .venv holds the hash of what was installed, written only after everything succeeded.
 """
 
 import hashlib
@@ -33,7 +33,9 @@ def check_python() -> None:
     """Refuse a Python that is too old."""
     if sys.version_info < OLDEST:
         given = ".".join(map(str, sys.version_info[:3]))
-        raise SetupError(f"Python {given} runs this; Trundle needs {OLDEST[0]}.{OLDEST[1]} or newer. Install it and run again.")
+        raise SetupError(
+            f"Python {given} runs this; Trundle needs {OLDEST[0]}.{OLDEST[1]} or newer. Install it and run again."
+        )
 
 
 def venv_python() -> Path:
@@ -64,7 +66,9 @@ def make_venv() -> None:
         line = f"apt-get install python{sys.version_info[0]}.{sys.version_info[1]}-venv"
         raise SetupError(f"Python's venv module is incomplete ({error}). On Debian or Ubuntu type: {line}") from error
     except OSError as error:
-        raise SetupError(f"{VENV} cannot be written: {error}. Free some space or move the folder, then run again.") from error
+        raise SetupError(
+            f"{VENV} cannot be written: {error}. Free some space or move the folder, then run again."
+        ) from error
 
 
 def wanted_hash(extras: str) -> str:
@@ -109,7 +113,9 @@ def missing_libraries(names: tuple[str, ...]) -> list[str]:
 
 def _renamed(name: str) -> bool:
     """Return whether a newer Debian has the library under another name (time_t transition: a t64 suffix)."""
-    answer = subprocess.run(["dpkg-query", "-W", "-f=${Status}", f"{name}t64"], capture_output=True, text=True, check=False)
+    answer = subprocess.run(
+        ["dpkg-query", "-W", "-f=${Status}", f"{name}t64"], capture_output=True, text=True, check=False
+    )
     return "install ok installed" in answer.stdout
 
 

@@ -9,9 +9,18 @@ from pathlib import Path
 ROOT = Path(__file__).resolve().parent.parent
 FILE_LIMIT, FUNCTION_LIMIT, MEDIAN_LIMIT, ARGUMENT_LIMIT = 400, 60, 12, 6
 KERNEL_FILES = {
-    "engine/geometry/projection.py", "engine/contact/query.py", "engine/contact/laws.py", "engine/dynamics/rates.py",
-    "engine/dynamics/impact.py", "engine/dynamics/phases.py", "engine/integrate/step.py", "engine/integrate/events.py",
-    "engine/integrate/advance.py", "engine/integrate/outcome.py", "engine/integrate/log.py", "engine/integrate/solve.py",
+    "engine/geometry/projection.py",
+    "engine/contact/query.py",
+    "engine/contact/laws.py",
+    "engine/dynamics/rates.py",
+    "engine/dynamics/impact.py",
+    "engine/dynamics/phases.py",
+    "engine/integrate/step.py",
+    "engine/integrate/events.py",
+    "engine/integrate/advance.py",
+    "engine/integrate/outcome.py",
+    "engine/integrate/log.py",
+    "engine/integrate/solve.py",
 }
 """Modules of compiled functions: they never raise."""
 MANY_ARGUMENTS: dict[str, str] = {}

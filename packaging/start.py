@@ -61,7 +61,10 @@ def without_window(design: Path, wanted: Path) -> None:
     if parts.returncode != 0:
         print(parts.stdout + parts.stderr, end="")
     say("drawing pictures")
-    run([str(venv_python()), "-m", "studio.pictures", str(design), "--out", str(folder / "pictures")], "Drawing the pictures")
+    run(
+        [str(venv_python()), "-m", "studio.pictures", str(design), "--out", str(folder / "pictures")],
+        "Drawing the pictures",
+    )
     write_report(design, folder)
     say(f"everything is in {folder}")
 

@@ -52,7 +52,9 @@ class VirtualScreen:
 
 def pytest(environment: dict[str, str], *words: str) -> int:
     """Run pytest in an environment; return its exit code."""
-    return subprocess.run([str(venv_python()), "-m", "pytest", *words], cwd=ROOT, env=environment, check=False).returncode
+    return subprocess.run(
+        [str(venv_python()), "-m", "pytest", *words], cwd=ROOT, env=environment, check=False
+    ).returncode
 
 
 def main() -> int:

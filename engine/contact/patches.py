@@ -28,7 +28,10 @@ _LATER = np.zeros(6)
 
 
 class Law(NamedTuple):
-    """Contact law of the ball on one wall; `loss_speed` inf: none, `spin_arm` negative: by Hertz, `contact_modulus` Pa."""
+    """Contact law of the ball on one wall.
+
+    `loss_speed` inf: none, `spin_arm` negative: by Hertz, `contact_modulus` Pa.
+    """
 
     static_friction: float = 0.5
     kinetic_friction: float = 0.4
@@ -51,7 +54,9 @@ UNTAGGED = Tag()
 
 
 class Rectangle(NamedTuple):
-    """Plane patch: origin (3,), unit u and v (3,), bounds (u_min, u_max, v_min, v_max), radius of hole and of disc, m."""
+    """Plane patch: origin (3,), unit u and v (3,), bounds (u_min, u_max, v_min, v_max),
+    radius of hole and of disc, m.
+    """
 
     origin: Array
     u: Array
@@ -178,7 +183,9 @@ class PatchList:
 
 
 def swept_boxes(knots: Array, first: NDArray[np.int64], radius: Array) -> Array:
-    """Bounds (n, 6) of n swept circles whose knots follow each other from rows `first`: knots, a chord's sagitta and the radius, m."""
+    """Bounds (n, 6) of n swept circles whose knots follow each other from rows `first`: knots,
+    a chord's sagitta and the radius, m.
+    """
     step = np.diff(knots[:, 0], append=0.0)
     longest = np.maximum.reduceat(np.maximum(step, 0.0), first)
     bend = np.sqrt(np.maximum.reduceat(np.einsum("ij,ij->i", knots[:, 7:10], knots[:, 7:10]), first))

@@ -27,8 +27,8 @@ from engine.geometry.projection import (
 from engine.kernel import kernel
 
 ANYWHERE = (np.int64(-1), 0.0)
-"""Warm start of a search that knows nothing. A plain -1 would be a type of its own to the compiler, and every kernel that
-takes a guess would be compiled twice (75 s in all, with this 49 s)."""
+"""Warm start of a search that knows nothing. A plain -1 would be a type of its own to the compiler, and every kernel
+that takes a guess would be compiled twice (75 s in all, with this 49 s)."""
 FAR = 1e9
 """m. Gap of a wall that cannot be touched from here."""
 FULL_CIRCLE = 2.0 * math.pi - 1e-9
@@ -294,9 +294,9 @@ def is_full_tube(walls, patch):
 def nearest_wall(walls, y, r, active, before):
     """Find the wall that a ball in state `y` touches next, other than `active` and what is linked to it.
 
-    A wall within the ball counts only while the ball closes on it: one it is leaving must not hide another. Nor does one count
-    that the mouth of the wall it was on last leads through, while it has not come out of it: `before` = (that wall, place at
-    the start of the step).
+    A wall within the ball counts only while the ball closes on it: one it is leaving must not hide another. Nor does
+    one count that the mouth of the wall it was on last leads through, while it has not come out of it: `before` =
+    (that wall, place at the start of the step).
 
     Returns
     -------

@@ -30,7 +30,9 @@ ROLE_FLOOR = 2
 """A touch ends the run as escaped (floor of the site)."""
 
 MU_STATIC, MU_KINETIC, ROLLING_LOSS, LOSS_SPEED, RESTITUTION, SPIN_ARM, CONTACT_MODULUS = range(7)
-"""Columns of `Scene.law`: -, -, - (energy form), m/s (inf: none), -, m (negative: by Hertz), Pa (0: no spin friction)."""
+"""Columns of `Scene.law`: -, -, - (energy form), m/s (inf: none), -, m (negative: by Hertz),
+Pa (0: no spin friction).
+"""
 
 
 class Scene(NamedTuple):
@@ -43,8 +45,10 @@ class Scene(NamedTuple):
     first, count : (n,) int64
         Slice of `knots` (swept) or `meridian` (revolved) that belongs to the patch.
     number : (n, 16) float64
-        Swept: 0 radius R, 1 phi_min, 2 phi_max (rad, about `down`; a range >= 2 pi is the full circle), 3 closed curve (0 or 1).
-        Revolved: 0:3 origin, 3:6 unit axis, 6 side (+1: n is the profile tangent turned left, (-z', rho'); -1: the other).
+        Swept: 0 radius R, 1 phi_min, 2 phi_max (rad, about `down`; a range >= 2 pi is the full circle),
+        3 closed curve (0 or 1).
+        Revolved: 0:3 origin, 3:6 unit axis, 6 side (+1: n is the profile tangent turned left, (-z', rho');
+        -1: the other).
         Plane: 0:3 origin, 3:6 unit u, 6:9 unit v (n = u x v), 9:13 u_min, u_max, v_min, v_max (may be inf),
         13 hole radius about the origin (0: none), 14 disc radius about the origin (inf: none).
     link : (n, 6) int64
@@ -70,7 +74,7 @@ class Scene(NamedTuple):
 
     kind: np.ndarray
     first: np.ndarray
-    count: np.ndarray
+    count: np.ndarray  # type: ignore[assignment]  # hides tuple.count, which nobody calls on a scene
     number: np.ndarray
     link: np.ndarray
     law: np.ndarray

@@ -13,8 +13,8 @@ ON_AXIS = 1e-9
 
 SMOOTH_ANGLE = 1e-5
 SMOOTH_STEP = 1e-9
-"""rad and m. Two walls that meet at a smaller angle and step are one smooth wall; otherwise each is an obstacle to a ball on
-the other (it touches the next wall of a dip before it leaves the first)."""
+"""rad and m. Two walls that meet at a smaller angle and step are one smooth wall; otherwise each is an obstacle to a
+ball on the other (it touches the next wall of a dip before it leaves the first)."""
 
 
 class Walls(NamedTuple):
@@ -27,7 +27,7 @@ class Walls(NamedTuple):
 
     kind: np.ndarray
     first: np.ndarray
-    count: np.ndarray
+    count: np.ndarray  # type: ignore[assignment]  # hides tuple.count, which nobody calls on walls
     number: np.ndarray
     link: np.ndarray
     smooth: np.ndarray
@@ -55,7 +55,9 @@ def _links(scene: Scene) -> np.ndarray:
 
 
 def _smooth(scene: Scene, link: np.ndarray) -> np.ndarray:
-    """Return which links are smooth: all, but for ends of tubes and troughs that meet the next at an angle or a step."""
+    """Return which links are smooth: all, but for ends of tubes and troughs that meet the next at an angle or a
+    step.
+    """
     smooth = np.ones(link.shape, dtype=np.bool_)
     for patch in np.flatnonzero(scene.kind == SWEPT_INSIDE):
         for side in (0, 1):

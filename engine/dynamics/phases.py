@@ -89,7 +89,8 @@ def halt(y, ball, normal):
 
 @kernel
 def holds_still(walls, ball, mode, y, out):
-    """Halt the ball and return whether it stays: the pull along the wall is within what rolling loss resists, |f_t| <= (b/r) N.
+    """Halt the ball and return whether it stays: the pull along the wall is within what rolling loss resists, |f_t| <=
+    (b/r) N.
 
     A ball on a plane stays where tan(slope) <= b/r = c_rr.
     """

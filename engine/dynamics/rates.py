@@ -101,7 +101,10 @@ def friction_force(mode, mu_force, need, slip):
 
 @kernel
 def spin_torque(law, mode, contact):
-    """Return the spin torque along n, N m, and `hold`. `contact` = (force N, r, k m r2, curvature, spin, slip, feed)."""
+    """Return the spin torque along n, N m, and `hold`.
+
+    `contact` = (force N, r, k m r2, curvature, spin, slip, feed).
+    """
     force, r, inertia, curvature, spin, slip, feed = contact
     lever = spin_lever(law, force, r, curvature)
     if lever == 0.0:

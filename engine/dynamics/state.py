@@ -27,7 +27,9 @@ class BallParams(NamedTuple):
 
 
 class Start(NamedTuple):
-    """Where a run starts: time s, x m, v m/s, w rad/s, patch (-1: in flight), arc length there m, regime (-1: decide)."""
+    """Where a run starts: time s, x m, v m/s, w rad/s, patch (-1: in flight), arc length there m,
+    regime (-1: decide).
+    """
 
     t: float
     x: np.ndarray

@@ -163,7 +163,8 @@ def _jump(rolled: Rolled, before: Placed, after: Placed, jump: float) -> Finding
         value=jump,
         limit=limit("curvature_jump"),
         unit="1/m",
-        sentence=f"Curvature jumps by {jump:.1f} 1/m from {name_of(before)} to {name_of(after)}: the ball starts to swing.",
+        sentence=f"Curvature jumps by {jump:.1f} 1/m from {name_of(before)} to {name_of(after)}: "
+        "the ball starts to swing.",
         cure="Ease this joint with a transition.",
         **here(rolled, after, 0.0),  # type: ignore[arg-type]
     )

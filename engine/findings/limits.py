@@ -26,7 +26,9 @@ LIMITS: dict[str, Limit] = {
     "clearance_length": Limit(0.001, "m", "bore less ball, over the ball: at least 5 % and 1 mm", "common practice"),
     "joint_angle": Limit(0.01745, "rad", "1 degree at a joint throws no ball", "common practice"),
     "joint_step": Limit(5e-5, "m", "the running face never steps up in the direction of travel", "common practice"),
-    "curvature_jump": Limit(3.0, "1/m", "from straight to a radius below a third of a metre the ball starts to swing", "common practice"),
+    "curvature_jump": Limit(
+        3.0, "1/m", "from straight to a radius below a third of a metre the ball starts to swing", "common practice"
+    ),
     "clash": Limit(0.0, "m", "two walls cannot be in one place", "geometry"),
     "uphill": Limit(1e-6, "ratio", "a ball at rest does not roll uphill", "geometry"),
 }

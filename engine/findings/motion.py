@@ -315,7 +315,8 @@ def comes_back(rolled: Rolled) -> list[Finding]:
                 value=float(height.max()),
                 limit=0.0,
                 unit="m",
-                sentence=f"The ball goes {rolled.length(deepest)} down into {name_of(entry)} and climbs back over its rim.",
+                sentence=f"The ball goes {rolled.length(deepest)} down into {name_of(entry)} "
+                "and climbs back over its rim.",
                 cure=f"Let the ball enter {name_of(entry)} slower or steeper, or make it deeper.",
                 **at_sample(rolled, row),  # type: ignore[arg-type]
             )

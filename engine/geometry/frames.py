@@ -1,9 +1,9 @@
 """The lowest line of the section along a curve: gravity frame, transported frame, bank.
 
-Open sections need the gravity frame, else they roll over on a helix; where the tangent comes near the vertical that frame
-spins without limit. A curve that stays clear of the vertical therefore takes the gravity frame; one that does not (a loop, a
-drop) carries its inlet's `down` along without turning it about the tangent, and what is left over at a free end is turned
-away smoothly over the whole curve.
+Open sections need the gravity frame, else they roll over on a helix; where the tangent comes near the vertical that
+frame spins without limit. A curve that stays clear of the vertical therefore takes the gravity frame; one that does
+not (a loop, a drop) carries its inlet's `down` along without turning it about the tangent, and what is left over at a
+free end is turned away smoothly over the whole curve.
 """
 
 import math
@@ -32,7 +32,9 @@ def with_gravity_down(rows: Array) -> Array:
 
 
 def with_down(rows: Array, start: Array) -> Array:
-    """Table (n, 16) from rows (n, 10): gravity frame, or where the curve comes near the vertical `start` (3,) carried along."""
+    """Table (n, 16) from rows (n, 10): gravity frame, or where the curve comes near the vertical `start`
+    (3,) carried along.
+    """
     level = np.hypot(rows[:, 4], rows[:, 5])
     if level.min() >= STEEP:
         return with_gravity_down(rows)
@@ -48,8 +50,8 @@ def with_down(rows: Array, start: Array) -> Array:
 def with_transported_down(rows: Array, start: Array) -> Array:
     """Table (n, 16): `start` carried along without turning about the tangent, down' = -(t' . down) t.
 
-    The frame is carried from half piece to half piece by two reflections (the double-reflection method), exact on circles and
-    fourth order elsewhere.
+    The frame is carried from half piece to half piece by two reflections (the double-reflection method), exact on
+    circles and fourth order elsewhere.
     """
     path = _halved(rows)
     carried = np.empty((len(path), 3))
@@ -87,7 +89,9 @@ def _reflected_twice(low: Array, high: Array, down: Array) -> Array:
 
 
 def banked(table: Array, start: float, end: float) -> Array:
-    """Table with `down` turned toward side = t x down by an angle going smoothly (3u^2 - 2u^3) from `start` to `end`, rad."""
+    """Table with `down` turned toward side = t x down by an angle going smoothly
+    (3u^2 - 2u^3) from `start` to `end`, rad.
+    """
     if start == 0.0 and end == 0.0:
         return table
     length = table[-1, S]
@@ -116,7 +120,10 @@ def side_of(table: Array) -> tuple[Array, Array]:
 
 
 def refined(table: Array, pieces: int) -> Array:
-    """Table with knots added so that no piece is longer than length / `pieces`; exact on straights, within the table's own error elsewhere."""
+    """Table with knots added so that no piece is longer than length / `pieces`.
+
+    Exact on straights, within the table's own error elsewhere.
+    """
     step = np.diff(table[:, S])
     parts = np.maximum(1, np.ceil(step / (table[-1, S] / pieces) - 1e-9)).astype(np.int64)
     if parts.max() == 1:
@@ -132,7 +139,9 @@ def refined(table: Array, pieces: int) -> Array:
 
 
 def _with_down_between(table: Array, rows: Array, kept: NDArray[np.bool_]) -> Array:
-    """The refined rows (n, 10) with `down`: by the gravity frame where the table used it, else as the table turns it."""
+    """The refined rows (n, 10) with `down`: by the gravity frame where the table used it,
+    else as the table turns it.
+    """
     by_gravity = with_gravity_down(table[:, :10]) if np.hypot(table[:, 4], table[:, 5]).min() >= STEEP else None
     if by_gravity is not None and np.abs(by_gravity[:, DOWN] - table[:, DOWN]).max() < 1e-9:
         full = with_gravity_down(rows)
@@ -143,7 +152,9 @@ def _with_down_between(table: Array, rows: Array, kept: NDArray[np.bool_]) -> Ar
 
 
 def _twisted_alike(table: Array, carried: Array, kept: NDArray[np.bool_]) -> Array:
-    """The transported frame `carried` turned about the tangent as the frame of `table` is, cubic between the knots of `table`."""
+    """The transported frame `carried` turned about the tangent as the frame of `table` is,
+    cubic between the knots of `table`.
+    """
     side, own_side = side_of(carried[kept])[0], side_of(table)[0]
     sine, cosine = (table[:, DOWN] * side).sum(axis=1), (table[:, DOWN] * carried[kept][:, DOWN]).sum(axis=1)
     angle = np.unwrap(np.arctan2(sine, cosine))

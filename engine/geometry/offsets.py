@@ -1,7 +1,8 @@
 """Curves that run beside a curve: lips, edges, rails.
 
 The offset curve is o(s) = c + a e with e = cos phi down + sin phi side. Its first derivative is exact at the knots; its
-second comes from the quintic through values and first derivatives at three neighbouring knots, fourth order in the spacing.
+second comes from the quintic through values and first derivatives at three neighbouring knots, fourth order in the
+spacing.
 """
 
 import math
@@ -17,10 +18,11 @@ _NODES, _WEIGHTS = np.polynomial.legendre.leggauss(6)
 
 
 def offset_curve(table: Array, phi: float, distance: float, down_angle: float = 0.0) -> Array:
-    """Table (n, 16) of the curve at `distance` (m) from the centreline at wall angle `phi` (rad), by its own arc length.
+    """Table (n, 16) of the curve at `distance` (m) from the centreline at wall angle `phi` (rad), by its own arc
+    length.
 
-    `down_angle` turns the new `down` from e (0: away from the old centreline) toward T x e, T the new tangent: with +pi/2 the old
-    centreline lies at wall angle +pi/2 of the new curve, with -pi/2 at -pi/2.
+    `down_angle` turns the new `down` from e (0: away from the old centreline) toward T x e, T the new tangent: with
+    +pi/2 the old centreline lies at wall angle +pi/2 of the new curve, with -pi/2 at -pi/2.
     """
     spoke, spoke_change = spoke_of(table, phi)
     place = table[:, R] + distance * spoke
@@ -49,8 +51,8 @@ def _turned(rows: Array, spoke: Array, change: Array, angle: float) -> tuple[Arr
 def second_derivative(s: Array, value: Array, slope: Array) -> Array:
     """Second derivative (n, k) from values and first derivatives (n, k) at knots (n,); fourth order.
 
-    Newton's form of the quintic through (value, slope) at three neighbouring knots, differentiated twice at the knot asked for.
-    Two knots only: the cubic through both.
+    Newton's form of the quintic through (value, slope) at three neighbouring knots, differentiated twice at the knot
+    asked for. Two knots only: the cubic through both.
     """
     if len(s) == 2:
         h = s[1] - s[0]
@@ -63,7 +65,9 @@ def second_derivative(s: Array, value: Array, slope: Array) -> Array:
 
 
 def _newton_second(z: Array, value: Array, slope: Array, middle: NDArray[np.intp]) -> Array:
-    """Second derivative at 0 of the polynomial with doubled nodes z (n, 6): divided differences, then the product rule."""
+    """Second derivative at 0 of the polynomial with doubled nodes z (n, 6): divided differences,
+    then the product rule.
+    """
     rows = middle[:, None] + np.array([-1, -1, 0, 0, 1, 1])
     level = value[rows]
     coefficients = []
@@ -86,7 +90,10 @@ def _newton_second(z: Array, value: Array, slope: Array, middle: NDArray[np.intp
 
 
 def _by_arc_length(s: Array, place: Array, slope: Array, bend: Array) -> Array:
-    """Rows (n, 10) by arc length from rows by any parameter; lengths by Gauss quadrature on the quintic between knots."""
+    """Rows (n, 10) by arc length from rows by any parameter.
+
+    Lengths by Gauss quadrature on the quintic between knots.
+    """
     raw = np.concatenate([s[:, None], place, slope, bend], axis=1)
     half = 0.5 * np.diff(s)[:, None]
     at = s[:-1, None] + half + half * _NODES
@@ -101,11 +108,12 @@ def _by_arc_length(s: Array, place: Array, slope: Array, bend: Array) -> Array:
 def edge_table(
     table: Array, normal: tuple[float, Array], outward: tuple[float, Array], span: float = math.pi
 ) -> tuple[Array, tuple[float, float], tuple[int, int]]:
-    """Sharp edge along a table whose `down` is e: its table, its range of wall angle, and which limits face the wall and away from it.
+    """Sharp edge along a table whose `down` is e: its table, its range of wall angle, and which limits face the wall
+    and away from it.
 
-    `normal` = (a, c) stands for the wall's unit normal a e + c at the edge, `outward` likewise for the unit direction that leads off
-    the wall along it. The edge holds a ball from `normal` on, over `span` (rad) toward `outward`; half a turn is a thin plate.
-    Limits are numbered as in `Scene.link`: 2 the low one, 3 the high one.
+    `normal` = (a, c) stands for the wall's unit normal a e + c at the edge, `outward` likewise for the unit direction
+    that leads off the wall along it. The edge holds a ball from `normal` on, over `span` (rad) toward `outward`; half
+    a turn is a thin plate. Limits are numbered as in `Scene.link`: 2 the low one, 3 the high one.
     """
     share = (normal[0] + outward[0]) / math.sqrt(2.0)
     fixed = (normal[1] + outward[1]) / math.sqrt(2.0)

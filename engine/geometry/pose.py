@@ -1,7 +1,8 @@
 """Where a curve starts or ends: position, tangent and the lowest line of the section before banking.
 
-Signs: heading from +x toward +y, grade positive downhill (fall over plan length), side = tangent x down (left of travel).
-A pose whose tangent is vertical still has a heading: the plan direction from which it was pitched down (or up).
+Signs: heading from +x toward +y, grade positive downhill (fall over plan length), side = tangent x down (left of
+travel). A pose whose tangent is vertical still has a heading: the plan direction from which it was pitched down (or
+up).
 """
 
 import math
@@ -81,7 +82,9 @@ def regraded(pose: Pose, grade: float) -> Pose:
 
 
 def turned(pose: Pose, angle: float, shift: Array) -> Pose:
-    """The pose turned about the vertical by `angle` (rad, positive to the left) where it stands, then moved by `shift` (3,) m."""
+    """The pose turned about the vertical by `angle` (rad, positive to the left) where it stands,
+    then moved by `shift` (3,) m.
+    """
     turn = yaw_matrix(angle)
     return Pose(pose.position + shift, turn @ pose.tangent, turn @ pose.down)
 

@@ -1,7 +1,8 @@
 """Curves of which runs are made, each as a knot table (n, 16) that starts at a given pose.
 
-Lengths called `length` are measured in plan unless said otherwise; s in the table is the true arc length. Straights, arcs and
-helices take their knots from the closed form; the others from a parametrised curve whose pieces are halved until they fit.
+Lengths called `length` are measured in plan unless said otherwise; s in the table is the true arc length. Straights,
+arcs and helices take their knots from the closed form; the others from a parametrised curve whose pieces are halved
+until they fit.
 """
 
 import math
@@ -77,7 +78,10 @@ def circle(centre: Array, axis: Array, radius: float, towards: Array | None = No
 
 
 def circle_arc(centre: Array, frame: tuple[Array, Array], radius: float, angles: tuple[float, float]) -> Array:
-    """Arc round `centre`: e = cos a u + sin a v with the unit vectors (u, v) = `frame`, a rising between `angles`; `down` = e."""
+    """Arc round `centre`: e = cos a u + sin a v with the unit vectors (u, v) = `frame`, a rising between `angles`.
+
+    `down` = e.
+    """
     u, v = frame
     span = angles[1] - angles[0]
     angle = np.linspace(angles[0], angles[1], max(2, 1 + math.ceil(span / PIECE_TURN)))[:, None]
@@ -97,7 +101,8 @@ def _frame(axis: Array, towards: Array | None) -> tuple[Array, Array]:
 
 
 def loop(start: Pose, radius: float, shift: float) -> Array:
-    """Upright loop of `radius` (m) in the plane of tangent and -down, moved to the left by `shift` (m) over its one turn.
+    """Upright loop of `radius` (m) in the plane of tangent and -down, moved to the left by `shift` (m) over its one
+    turn.
 
     r = p + radius (sin a t - (1 - cos a) down) + shift q(a / 2 pi) side, q = u^3 (10 - 15 u + 6 u^2)
     """
@@ -140,7 +145,8 @@ def easing(start: Pose, length: float, grade_start: float, grade_end: float) -> 
 def free_line(start: Pose, points: Array) -> Array:
     """Smooth line (C2, cubic spline by chord) through points (n, 3) given forward, left, up from `start`.
 
-    The first point is the inlet itself and is not given. It leaves along the tangent of `start` and ends without curvature.
+    The first point is the inlet itself and is not given. It leaves along the tangent of `start` and ends without
+    curvature.
     """
     through = np.concatenate([start.position[None], from_pose(start, np.atleast_2d(points))])
     knots = np.concatenate([[0.0], np.cumsum(np.sqrt((np.diff(through, axis=0) ** 2).sum(axis=1)))])
@@ -153,9 +159,11 @@ def free_line(start: Pose, points: Array) -> Array:
 
 
 def spline_bends(u: Array, values: Array, slope: Array | None = None) -> Array:
-    """Second derivatives (n, k) at the knots of the cubic spline through values (n, k); `slope` (k,) at the start, else natural.
+    """Second derivatives (n, k) at the knots of the cubic spline through values (n, k); `slope` (k,) at the start,
+    else natural.
 
-    h_i m_i + 2 (h_i + h_{i+1}) m_{i+1} + h_{i+1} m_{i+2} = 6 (d_{i+1} - d_i), d the slopes of the chords; natural at the end
+    h_i m_i + 2 (h_i + h_{i+1}) m_{i+1} + h_{i+1} m_{i+2} = 6 (d_{i+1} - d_i), d the slopes of the chords; natural at
+    the end
     """
     h = np.diff(u)
     chord = np.diff(values, axis=0) / h[:, None]

@@ -1,7 +1,7 @@
 """Meridians: plane curves turned about an axis, as tables (p, 7): s, rho, z, rho', z', rho'', z''.
 
-rho is the distance from the axis, z the height along it. A profile runs the way the ball goes: inward and down in a funnel.
-The normal used for offsets is the tangent turned left, (-z', rho'); a positive distance goes that way.
+rho is the distance from the axis, z the height along it. A profile runs the way the ball goes: inward and down in a
+funnel. The normal used for offsets is the tangent turned left, (-z', rho'); a positive distance goes that way.
 Between knots the quintic polynomial holds, as for curves.
 """
 
@@ -41,7 +41,10 @@ def arc(centre: tuple[float, float], radius: float, angles: tuple[float, float])
 
 
 def power(ends: tuple[tuple[float, float], tuple[float, float]], exponent: float) -> Array:
-    """z = a + b rho^exponent through two points (rho, z) with rho > 0, m; exponent -1 hyperbola, 1 cone, 2 parabola, 0 the logarithm."""
+    """z = a + b rho^exponent through two points (rho, z) with rho > 0, m.
+
+    Exponent -1 hyperbola, 1 cone, 2 parabola, 0 the logarithm.
+    """
     (rho0, z0), (rho1, z1) = ends
     span = math.log(rho1 / rho0)
     factor = (z1 - z0) / (math.expm1(exponent * span) / exponent if exponent else span)
@@ -60,7 +63,11 @@ def hyperbola(rho: tuple[float, float], strength: float, level: float = 0.0) -> 
     """z = level - strength / rho between two radii (m); `strength` in m2."""
 
     def at(u: Array) -> tuple[Array, Array, Array]:
-        return _columns(u, level - strength / u), _columns(u / u, strength / u**2), _columns(0.0 * u, -2.0 * strength / u**3)
+        return (
+            _columns(u, level - strength / u),
+            _columns(u / u, strength / u**2),
+            _columns(0.0 * u, -2.0 * strength / u**3),
+        )
 
     return _tabulated(at, np.geomspace(rho[0], rho[1], 9))
 
@@ -121,7 +128,9 @@ def joined(parts: Sequence[Array]) -> Array:
 
 
 def smooth_parts(meridian: Array) -> list[Array]:
-    """The parts of a joined meridian between jumps of curvature, each a table of its own whose s goes on from the last."""
+    """The parts of a joined meridian between jumps of curvature,
+    each a table of its own whose s goes on from the last.
+    """
     return np.split(meridian, np.flatnonzero(np.diff(meridian[:, 0]) <= 0.0) + 1)
 
 
@@ -162,7 +171,10 @@ def at_length(meridian: Array, s: Array) -> tuple[Array, Array, Array]:
 
 
 def length_at_height(meridian: Array, z: float) -> float:
-    """Profile length at which a profile that falls all the way passes height z, m; its nearer end where it never does."""
+    """Profile length at which a profile that falls all the way passes height z, m.
+
+    Its nearer end where it never does.
+    """
     heights = meridian[:, 2]
     if z >= heights[0]:
         return 0.0

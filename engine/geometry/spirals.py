@@ -1,7 +1,7 @@
 """Clothoid in plan with constant grade: plan curvature linear in length.
 
-heading(l) = h0 + k0 l + (k1 - k0) l^2 / (2 L); the position is the integral of (cos, sin), taken piece by piece with Gauss
-quadrature, which is exact to rounding at the piece lengths used.
+heading(l) = h0 + k0 l + (k1 - k0) l^2 / (2 L); the position is the integral of (cos, sin), taken piece by piece with
+Gauss quadrature, which is exact to rounding at the piece lengths used.
 """
 
 import math
@@ -13,7 +13,9 @@ from engine.geometry.pose import Array, Pose
 from engine.geometry.tables import PIECE_TURN
 
 SHARPNESS_STEP = 0.1
-"""Largest piece in units of 1 / sqrt(change of curvature per length): keeps the quintic within 3e-9 of the piece length."""
+"""Largest piece in units of 1 / sqrt(change of curvature per length):
+keeps the quintic within 3e-9 of the piece length.
+"""
 
 _NODES, _WEIGHTS = np.polynomial.legendre.leggauss(10)
 

@@ -1,8 +1,8 @@
 """Curve knot tables: making them from a parametrised curve, reading between the knots, moving them.
 
 A table has one row per knot (see DEVELOPERS.md): s, r, r', r'', down, down'. Between knots the position is the quintic
-polynomial that takes r, r', r'' of both ends. Its error is h^6/46080 |r^(6)|: a circle cut into pieces of 0.07 rad is met
-within 3e-12 of its radius.
+polynomial that takes r, r', r'' of both ends. Its error is h^6/46080 |r^(6)|: a circle cut into pieces of 0.07 rad is
+met within 3e-12 of its radius.
 """
 
 import math
@@ -115,7 +115,9 @@ def unit(vectors: Array) -> Array:
 
 
 def moved(table: Array, pose: Pose) -> Array:
-    """A table made at the origin with heading +x, carried to the place and heading of `pose` (turned about the vertical only)."""
+    """A table made at the origin with heading +x, carried to the place and heading of `pose`
+    (turned about the vertical only).
+    """
     out = np.empty_like(table)
     out[:, S] = table[:, S]
     out[:, 1:] = (table[:, 1:].reshape(-1, 3) @ yaw_matrix(pose.heading).T).reshape(-1, 15)

@@ -82,8 +82,8 @@ def touch_of(walls, ball, mode, work, place):
 def meet_wall(walls, ball, mode, work, plan):
     """Return (theta, patch, free way, extended) of the first wall met in the step just made.
 
-    `plan` = (h, tolerance, piece, q, extended, wall left last): the continuous extension is filled when a wall lies within
-    the ball.
+    `plan` = (h, tolerance, piece, q, extended, wall left last): the continuous extension is filled when a wall lies
+    within the ball.
     """
     y1, r = work.y1, ball.radius
     h, tolerance, piece, q, extended, left = plan
@@ -118,7 +118,8 @@ def longest(mode, y, free, reach):
 def advance(walls, ball, mode, work, plan):
     """Make one step from `work.y0` to `work.y1` and find the first event in it.
 
-    `plan` = (h wished, time to the end, way free of other walls, Contact at the start, tolerance, wall the ball was on last).
+    `plan` = (h wished, time to the end, way free of other walls, Contact at the start, tolerance, wall the ball was on
+    last).
     """
     h, span, free, contact, tolerance, left = plan
     y = work.y0

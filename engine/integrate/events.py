@@ -19,7 +19,9 @@ from engine.kernel import kernel
 GUARDS = 11
 LIFT, CONE, SLIP, STOP, SPIN, SIDE = 0, 1, 2, 3, 4, 5
 BEHIND = 0.01
-"""Share of its radius by which a ball is within a wall that it has come through from behind (parts that cross each other)."""
+"""Share of its radius by which a ball is within a wall that it has come through from behind
+(parts that cross each other).
+"""
 NOT_THERE = -1.0
 """Instead of a share of the step: the wall is not met."""
 HALVINGS = 40
@@ -29,8 +31,8 @@ TURN_SHARE = 10.0
 
 
 class Heading(NamedTuple):
-    """Directions at the start of a step, of the slip velocity and of the rolling spin (zero when there is none), and the
-    speed below which either counts as stopped, m/s.
+    """Directions at the start of a step, of the slip velocity and of the rolling spin (zero when there is none), and
+    the speed below which either counts as stopped, m/s.
     """
 
     ux: float
@@ -153,7 +155,8 @@ def gap_at(walls, ball, patch, work, theta):
 
 @kernel
 def last_apart(walls, ball, patch, work, high):
-    """Return (share, gap) of a place in the step at which the ball is off a wall that it starts on; gap 0 when there is none.
+    """Return (share, gap) of a place in the step at which the ball is off a wall that it starts on; gap 0 when there
+    is none.
 
     Halving finds the hop however short it is: a place at most half as late as its end lies within it.
     """
@@ -168,10 +171,11 @@ def last_apart(walls, ball, patch, work, high):
 
 @kernel
 def never_apart(walls, ball, patch, work, place):
-    """Return the share at which a ball that is nowhere off a wall in the step meets it, NOT_THERE when it came from behind.
+    """Return the share at which a ball that is nowhere off a wall in the step meets it, NOT_THERE when it came from
+    behind.
 
-    `place` = (gap at the start, share). A ball that closes on the wall meets it at once; one that only grazes it goes on to
-    the end of the step, so that time passes.
+    `place` = (gap at the start, share). A ball that closes on the wall meets it at once; one that only grazes it goes
+    on to the end of the step, so that time passes.
     """
     gap, high = place
     if gap < -BEHIND * ball.radius:
@@ -186,7 +190,8 @@ def never_apart(walls, ball, patch, work, place):
 def locate_touch(walls, ball, patch, work, high):
     """Return the share of the step at which the gap to `patch`, below zero at `high`, last became zero.
 
-    A ball that has just left this wall starts at a gap of zero: the start of the bracket is then sought inside the step.
+    A ball that has just left this wall starts at a gap of zero: the start of the bracket is then sought inside the
+    step.
     """
     low, f_low = 0.0, gap_at(walls, ball, patch, work, 0.0)
     if f_low <= 0.0:

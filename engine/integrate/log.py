@@ -24,7 +24,9 @@ T, Y, PATCH, REGIME, S, ANGLE, NORMAL, FORCE, SLIP, FRICTION, NEED, IMPACT, ASKE
 SAMPLE = 27
 
 KIND, MARK_T, MARK_Y, MARK_PATCH, VALUE, MARK_NORMAL, MARK_IMPACT, MODE = 0, 1, 2, 15, 16, 17, 20, 21
-"""Columns of an event: kind, time, state after it, patch, value, normal, impact loss so far, mode after it (4 numbers)."""
+"""Columns of an event: kind, time, state after it, patch, value, normal, impact loss so far, mode after it
+(4 numbers).
+"""
 MARK = 25
 
 

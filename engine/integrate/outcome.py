@@ -28,11 +28,14 @@ PARTING = 1e-4
 """m/s. A next wall that falls away faster than this is left at once."""
 
 WEDGED = 0.02
-"""m/s. A ball pressed into two walls slower than this is at rest between them: it would fall 20 micrometres from that."""
+"""m/s. A ball pressed into two walls slower than this is at rest between them: it would fall 20 micrometres
+from that."""
 
 
 class Outcome(NamedTuple):
-    """New mode, event kind (or QUIET), status (or GOES_ON), patch of the event, its value, normal, energy lost per mass."""
+    """New mode, event kind (or QUIET), status (or GOES_ON), patch of the event, its value, normal,
+    energy lost per mass.
+    """
 
     mode: Mode
     kind: int

@@ -51,7 +51,8 @@ STATUS_SENTENCES = {
     Status.RESTED: "The ball comes to rest and stays.",
     Status.ESCAPED: "The ball leaves the run and reaches the floor.",
     Status.TIME_LIMIT: "The ball is still moving at the time limit; look for an endless orbit or raise the limit.",
-    Status.CHATTER: "The ball touches two walls at once, which one contact cannot follow; widen the corner or add a fillet larger than the ball.",
+    Status.CHATTER: "The ball touches two walls at once, which one contact cannot follow; "
+    "widen the corner or add a fillet larger than the ball.",
     Status.STEP_LIMIT: "The step count ran out; look for a place with far too small a radius.",
     Status.CANCELLED: "The run was cancelled.",
     Status.NO_FIT: "The ball does not fit into the wall it starts on; choose a larger bore or a smaller ball.",
@@ -65,7 +66,9 @@ LOSSES = ("slip", "rolling", "spin", "air", "impact")
 
 @dataclass(frozen=True)
 class Event:
-    """One event: kind, time (s), state there (after it), patch, and a value (m/s: closing speed of a touch-down or slip speed)."""
+    """One event: kind, time (s), state there (after it), patch, and a value
+    (m/s: closing speed of a touch-down or slip speed).
+    """
 
     kind: EventKind
     t: float

@@ -21,7 +21,10 @@ TIME_UP, CHATTERING, STEPS_UP, CANCELLED, NO_FIT, NOT_FINITE = 3, 4, 5, 6, 7, 9
 """Values of `result.Status`."""
 
 class Options(NamedTuple):
-    """`end` s; `tolerance` (see constants.TOLERANCE); `spacing` s between samples at most (0: steps and asked times only)."""
+    """`end` s; `tolerance` (see constants.TOLERANCE).
+
+    `spacing` s between samples at most (0: steps and asked times only).
+    """
 
     end: float
     tolerance: float

@@ -1,7 +1,7 @@
 """One step of an embedded Runge-Kutta pair, its error and its dense output.
 
-The method is data: `tableau` holds the coefficients, the algorithm here reads them. The last stage of a step is the first
-of the next. The continuous extension costs three more stages and is made only for a step that needs it.
+The method is data: `tableau` holds the coefficients, the algorithm here reads them. The last stage of a step is the
+first of the next. The continuous extension costs three more stages and is made only for a step that needs it.
 """
 
 import math
@@ -20,8 +20,8 @@ COEFFICIENTS = 7
 
 
 class Work(NamedTuple):
-    """Scratch arrays of one run: `k` (16, 13) stages; `y0`, `y1`, `trial`, `spare` (13,) states and rates; `dense` (7, 13)
-    coefficients; `guards`, `before`, `after` (11,) guard values.
+    """Scratch arrays of one run: `k` (16, 13) stages; `y0`, `y1`, `trial`, `spare` (13,) states and rates; `dense` (7,
+    13) coefficients; `guards`, `before`, `after` (11,) guard values.
     """
 
     k: np.ndarray
@@ -136,7 +136,10 @@ def next_size(h, error):
 
 @kernel
 def fill_dense(walls, ball, mode, work, plan):
-    """Fill `work.dense` with the coefficients of the continuous extension of the step just made. `plan` as `try_step`."""
+    """Fill `work.dense` with the coefficients of the continuous extension of the step just made.
+
+    `plan` as `try_step`.
+    """
     h, _, piece, q = plan
     guess = (piece, q)
     k, dense = work.k, work.dense

@@ -1,8 +1,8 @@
 """Coefficients of the eighth-order pair of Dormand and Prince with third- and fifth-order error estimates.
 
-Dormand and Prince 8(5,3) with a seventh-order continuous extension: Hairer, Norsett, Wanner, Solving Ordinary Differential
-Equations I, II.5 and II.6 (code DOP853), as printed to double precision in the open library scipy (BSD licence).
-Chosen over the pair 5(4) after measuring both, see DEVELOPERS.md, Decisions.
+Dormand and Prince 8(5,3) with a seventh-order continuous extension: Hairer, Norsett, Wanner, Solving Ordinary
+Differential Equations I, II.5 and II.6 (code DOP853), as printed to double precision in the open library scipy (BSD
+licence). Chosen over the pair 5(4) after measuring both, see DEVELOPERS.md, Decisions.
 """
 
 import numpy as np

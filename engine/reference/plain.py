@@ -13,8 +13,8 @@ Array = NDArray[np.float64]
 HELIX, PITCH, BORE, BALL, INERTIA = 0.15, 0.08, 0.022, 0.0125, 0.4
 GRAVITY = np.array([0.0, 0.0, -9.80665])
 TOLERANCE = 3e-7
-"""Relative and absolute tolerance of scipy's solver: a path error of about 2e-10 m after a second, which is what the kernels
-make there too (their step is bounded by the sampling, not by the error)."""
+"""Relative and absolute tolerance of scipy's solver: a path error of about 2e-10 m after a second, which is what the
+kernels make there too (their step is bounded by the sampling, not by the error)."""
 
 
 def closest(x: Array) -> float:

@@ -3,9 +3,9 @@
 MuJoCo has soft contacts: a ball sinks in by some micrometres and slip never ends quite. Rolling and sliding speeds are
 therefore compared to 1e-4, about ten times what was measured, and places on a slope to 1e-3. Its rebound follows from
 stiffness and damping; the restitution is taken from its own normal motion, and what is compared is the change along
-the floor of an impact that slides all through, to 0.5 %: the contact lasts a third of a millisecond there, no time here, and
-weight adds 0.2 % to the impulse. Slip must stay large to the end: their friction is damped and gives way where it is
-slow.
+the floor of an impact that slides all through, to 0.5 %: the contact lasts a third of a millisecond there, no time
+here, and weight adds 0.2 % to the impulse. Slip must stay large to the end: their friction is damped and gives way
+where it is slow.
 """
 
 import math

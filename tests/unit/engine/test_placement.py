@@ -78,7 +78,9 @@ def test_moving_the_start_moves_everything_alike():
 
 
 def test_gap_is_seen_from_its_inlet():
-    entry = placed(Bend(id="b", turn=math.pi / 2, grade=0.0), Gap(id="g", forward=0.1, left=0.02, drop=0.05, turn=-0.5))[1]
+    entry = placed(
+        Bend(id="b", turn=math.pi / 2, grade=0.0), Gap(id="g", forward=0.1, left=0.02, drop=0.05, turn=-0.5)
+    )[1]
     assert entry.outlet.position - entry.inlet.position == pytest.approx([-0.02, 0.1, -0.05], abs=1e-14)
     assert entry.outlet.heading == pytest.approx(math.pi / 2 - 0.5)
 
@@ -122,7 +124,9 @@ def test_inlet_angle_turns_the_path_inward():
 def test_well_stands_upright_lies_and_leads_on():
     _, upright = placed(Straight(id="a", grade=0.0), Well(id="w", floor=False))
     assert upright.outlet.position == pytest.approx(upright.origin - [0, 0, 0.2])
-    _, lying = placed(Straight(id="a", grade=0.0), Well(id="w", floor=False, tilt=math.pi / 2, tilt_heading=math.pi / 2, hand=-1))
+    _, lying = placed(
+        Straight(id="a", grade=0.0), Well(id="w", floor=False, tilt=math.pi / 2, tilt_heading=math.pi / 2, hand=-1)
+    )
     assert lying.axis == pytest.approx([0, 1, 0], abs=1e-15)
     assert lying.origin[2] > lying.inlet.position[2]
     assert lying.outlet.tangent == pytest.approx([0, -1, 0], abs=1e-15)

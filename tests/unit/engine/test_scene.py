@@ -204,7 +204,9 @@ def test_release_stands_on_the_wall_and_rolls():
     assert start.v - RADIUS * np.cross(start.w, n) == pytest.approx(np.zeros(3), abs=1e-12)
     assert np.linalg.norm(start.v) == pytest.approx(0.8)
     assert start.w @ n == pytest.approx(2.0)
-    tangent = interpolate(lay_out(designs.single_run(Bend(id="b", radius=0.2, grade=0.1))).placed[0].curve, np.array([0.05]))[1][0]
+    tangent = interpolate(
+        lay_out(designs.single_run(Bend(id="b", radius=0.2, grade=0.1))).placed[0].curve, np.array([0.05])
+    )[1][0]
     assert start.v @ tangent == pytest.approx(0.8 * math.cos(0.2), abs=1e-9)
     assert start.v @ np.cross(n, tangent) == pytest.approx(0.8 * math.sin(0.2), abs=1e-9)
 
@@ -261,7 +263,9 @@ def test_fast_ball_in_a_low_trough_goes_over_its_lip():
     "vessel", [Funnel(id="f"), Bowl(id="f"), Well(id="f", floor=False, depth=0.1), Funnel(id="f", hand=-1)]
 )
 def test_vessel_is_entered_and_left_below(vessel):
-    made, track = rolled(Straight(id="a", grade=0.05), vessel, Tray(id="t", drop=0.05, length=0.4, width=0.4), speed=0.3)
+    made, track = rolled(
+        Straight(id="a", grade=0.05), vessel, Tray(id="t", drop=0.05, length=0.4, width=0.4), speed=0.3
+    )
     assert track.status == Status.ARRIVED
     assert owners_met(made, track) == [0, 1, 2]
 

@@ -62,7 +62,10 @@ def test_second_derivative_is_exact_for_quintics_on_uneven_knots():
 
 def test_edge_faces_its_wall_from_one_limit_and_open_air_from_the_other():
     ring = primitives.circle(np.zeros(3), np.array([0.0, 0.0, 1.0]), 0.1)
-    for normal, outward in (((-1.0, np.zeros(3)), (0.0, np.array([0.0, 0.0, 1.0]))), ((0.0, np.array([0, 0, 1.0])), (1.0, np.zeros(3)))):
+    for normal, outward in (
+        ((-1.0, np.zeros(3)), (0.0, np.array([0.0, 0.0, 1.0]))),
+        ((0.0, np.array([0, 0, 1.0])), (1.0, np.zeros(3))),
+    ):
         table, span, (near, away) = edge_table(ring, normal, outward)
         wall = normal[0] * ring[:, 10:13] + normal[1]
         left = np.cross(table[:, 4:7], table[:, 10:13])
