@@ -255,12 +255,10 @@ def thinned(points: Array, step: float, keys: Indices) -> Indices:
     return np.flatnonzero(kept)
 
 
-def spaced(along: Array, step: float) -> Indices:
-    """Rows to keep so that their lengths along a line (n,) are about `step` apart, both ends among them."""
-    bins = np.floor(along / step)
-    kept = np.ones(len(along), dtype=bool)
-    kept[1:-1] = bins[1:-1] != bins[:-2]
-    return np.flatnonzero(kept)
+def evenly(along: Array, step: float) -> Array:
+    """Lengths (m,) along a line, evenly apart by about `step`, from its first to its last length."""
+    count = max(1, math.ceil((along[-1] - along[0]) / step))
+    return np.linspace(along[0], along[-1], count + 1)
 
 
 def runs_of(keys: Indices) -> list[tuple[int, int]]:

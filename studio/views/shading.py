@@ -26,7 +26,15 @@ void main() {
 """
 FRAGMENT = """
 #ifdef GL_ES
+#ifdef GL_OES_standard_derivatives
+#extension GL_OES_standard_derivatives : enable
+#define CHANGE(x) fwidth(x)
+#else
+#define CHANGE(x) 0.1
+#endif
 precision mediump float;
+#else
+#define CHANGE(x) fwidth(x)
 #endif
 varying vec4 v_color;
 varying vec3 v_normal;
@@ -38,12 +46,13 @@ void main() {
     float gloss = pow(max(dot(n, vec3(-0.24, 0.41, 0.88)), 0.0), 40.0);
     float edge = pow(1.0 - n.z, 2.0);
     vec3 shade = v_color.rgb * (0.72 + 0.28 * key + 0.10 * fill - 0.16 * edge) + 0.10 * gloss;
-    float soft = v_color.a < 0.99 ? smoothstep(0.0, 0.22, n.z) : 1.0;
+    float soft = v_color.a < 0.99 ? clamp(0.5 * n.z / max(CHANGE(n.z), 1e-4), 0.0, 1.0) : 1.0;
     gl_FragColor = vec4(shade, soft * min(1.0, v_color.a + 0.55 * edge));
 }
 """
 """Key light from the upper left, fill from the right, a small gloss; what one looks through is denser where it turns
-away, as a draughtsman would draw it, and fades at its very edge so that the edge is smooth. Both sides are lit."""
+away, as a draughtsman would draw it, and fades over the last pixel so that its edge is smooth (a pixel inside the edge
+of a tube of radius R px, n.z is sqrt(2 / R) and changes by half of that a pixel). Both sides are lit."""
 
 LINE_VERTEX = """
 uniform mat4 u_mvp;

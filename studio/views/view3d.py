@@ -11,7 +11,7 @@ from PySide6.QtWidgets import QFrame, QHBoxLayout, QLabel, QToolButton, QVBoxLay
 
 from engine.integrate.result import Regime
 from engine.placement import Layout
-from studio.display import Array, BallPath, layout_of, levels_of, moment_at, orientation_at, path_of, spaced
+from studio.display import Array, BallPath, evenly, layout_of, levels_of, moment_at, orientation_at, path_of
 from studio.meshes import ball_mesh, hit
 from studio.stage import Group, ribbon, ribbons, stage_of
 from studio.theme import Theme
@@ -27,11 +27,11 @@ AZIMUTH, ELEVATION = -58.0, 26.0
 ORBIT, KEY_ORBIT, KEY_ZOOM = 0.4, 6.0, 1.2
 """deg a px, deg a key, share a key."""
 CLICK_REACH = 3.0
-MOST_POINTS, SPACING = 6000, 400.0
-"""Points of the path shown in space, and how many of them lie along the largest side: closer ones fade to nothing."""
+MOST_POINTS, SPACING = 6000, 500.0
+"""Points of the path shown in space, and how many of them lie along the largest side."""
 THOUSAND = 1000.0
-DASHES = 160.0
-"""Dashes and gaps of flight along the largest side."""
+DASH = 3
+"""Points to a dash and to a gap of the path in flight."""
 FREE = 1.08
 """Share of the distance added, so that nothing touches the border."""
 CLEAR, CHOSEN = 0.22, 0.34
@@ -107,12 +107,14 @@ class Space(GLViewWidget):
         if path is None:
             self._path_line.setVisible(False)
             return
-        kept = spaced(path.developed, max(float(path.developed[-1]) / MOST_POINTS, self._step * THOUSAND / SPACING))
-        levels = levels_of(path.speed[kept], path.top_speed)
+        way = evenly(path.developed, max(float(path.developed[-1]) / MOST_POINTS, self._step * THOUSAND / SPACING))
+        row = np.clip(np.searchsorted(path.developed, way, side="right") - 1, 0, len(path.t) - 1)
+        place = np.stack([np.interp(way, path.developed, path.place[:, axis]) for axis in range(3)], axis=1)
+        levels = levels_of(path.speed[row], path.top_speed)
         table = np.array([colour.getRgbF() for colour in path_colours(self.theme.dark)], dtype=np.float32)
-        dash = np.floor(path.developed[kept] / (self._step * THOUSAND / DASHES)) % 2 == 0
-        shown = dash | (path.regime[kept] != int(Regime.FLIGHT))
-        self._path_line.fill(ribbon(path.place[kept], self._step, shown), table[levels])
+        dash = np.arange(len(way)) // DASH % 2 == 0
+        shown = dash | (path.regime[row] != int(Regime.FLIGHT))
+        self._path_line.fill(ribbon(place, self._step, shown), table[levels])
 
     def _colour_ball(self) -> None:
         mesh, light = ball_mesh()

@@ -145,6 +145,12 @@ def test_runs_cover_the_line_without_gaps():
     assert display.runs_of(np.zeros(4, dtype=np.int64)) == [(0, 3)]
 
 
+def test_even_lengths_reach_both_ends():
+    found = display.evenly(np.array([1.0, 1.2, 4.0]), 0.7)
+    assert found[0] == 1.0 and found[-1] == 4.0
+    assert np.ptp(np.diff(found)) < ROUNDING and np.diff(found).max() <= 0.7
+
+
 def test_levels_span_the_palette():
     assert display.levels_of(np.array([0.0, 0.5, 1.0, 2.0]), 1.0, 10).tolist() == [0, 5, 9, 9]
 
