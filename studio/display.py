@@ -29,6 +29,8 @@ Indices = NDArray[np.int64]
 
 LEVELS = 24
 """Colours along a path: each run of one colour is one line."""
+MISS, LONGEST_CHORD = 0.1, 30.0
+"""px. A drawn line misses the true one by about this much, and has a point at least this often."""
 LEAST_TURN = 1e-12
 """rad. A turn smaller than this has no axis worth computing."""
 
@@ -44,7 +46,7 @@ class BallPath:
         Middle of the ball.
     speed : (n,) m/s
     angle : (n,) rad
-        Wall angle.
+        Wall angle; nan off the track (vessels, plates).
     load : (n,)
         Normal force over the weight of the ball.
     regime, element : (n,) int
@@ -126,12 +128,13 @@ def path_of(roll: "Roll | None") -> BallPath | None:
     if roll is None or len(roll.trajectory.t) < 2:
         return None
     track, weight = roll.trajectory, roll.ball.mass * STANDARD_GRAVITY
+    on_track = [entry.index for entry in roll.layout.placed if entry.curve is not None]
     step = np.sqrt((np.diff(track.x, axis=0) ** 2).sum(axis=1))
     return BallPath(
         t=track.t - track.t[0],
         place=track.x,
         speed=np.sqrt((track.v * track.v).sum(axis=1)),
-        angle=track.angle,
+        angle=np.where(np.isin(track.element, on_track), track.angle, np.nan),
         load=track.normal_force / weight,
         regime=track.regime.astype(np.int64),
         element=track.element.astype(np.int64),
@@ -244,12 +247,19 @@ def levels_of(values: Array, top: float, count: int = LEVELS) -> Indices:
 
 
 def thinned(points: Array, step: float, keys: Indices) -> Indices:
-    """Rows to keep of a line (n, 2) in px: one each `step` px along it, the ends, and wherever `keys` changes.
+    """Rows to keep of a line (n, 2) in px: the ends, wherever `keys` changes, and enough between to look the same.
 
-    Length along the line is used, so a line that turns back on itself keeps its turns.
+    A chord of length L of a line of curvature k misses it by k L^2 / 8; so sqrt(k / (8 `MISS`)) points are wanted a px,
+    one each `LONGEST_CHORD` at least and one each `step` px at most. Length along the line is used, so a line that
+    turns back on itself keeps its turns.
     """
-    along = np.concatenate([[0.0], np.cumsum(np.hypot(*np.diff(points, axis=0).T))])
-    bins = np.floor(along / step)
+    pieces = np.diff(points, axis=0)
+    size = np.hypot(pieces[:, 0], pieces[:, 1])
+    heading = np.arctan2(pieces[:, 1], pieces[:, 0])
+    turn = np.abs((np.diff(heading, prepend=heading[0]) + math.pi) % (2.0 * math.pi) - math.pi)
+    curvature = turn / np.maximum(size, 1e-9)
+    density = np.clip(np.sqrt(curvature / (8.0 * MISS)), 1.0 / LONGEST_CHORD, 1.0 / step)
+    bins = np.floor(np.concatenate([[0.0], np.cumsum(density * size)]))
     kept = np.ones(len(points), dtype=bool)
     kept[1:-1] = (bins[1:-1] != bins[:-2]) | (keys[1:-1] != keys[:-2])
     return np.flatnonzero(kept)

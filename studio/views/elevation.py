@@ -284,12 +284,12 @@ class ElevationView(Canvas):
         painter.setPen(pen(self.theme.colour("accent"), 1.25))
         painter.drawLine(QPointF(at.x(), 32.0), QPointF(at.x(), self.height() - RULER + 5.0))
         draw_ball(painter, at, 4.0, self.theme)
-        lines = [
-            f"{moment.t:.2f} s   {moment.speed:.2f} m/s",
-            f"wall angle {math.degrees(moment.angle):.0f}°   load {moment.load:.1f} g".replace("-", "\u2212"),
-        ]
+        second = f"load {moment.load:.1f} g"
+        if math.isfinite(moment.angle):
+            second = f"wall angle {math.degrees(moment.angle):.0f}°   {second}".replace("-", "\u2212")
         if path.regime[moment.sample] == int(Regime.FLIGHT):
-            lines[1] = "in flight"
+            second = "in flight"
+        lines = [f"{moment.t:.2f} s   {moment.speed:.2f} m/s", second]
         elevation_words.paint_readout(painter, self, at, lines)
 
     def name_at(self, at: QPointF) -> str:

@@ -19,6 +19,8 @@ LIGHT_SPAN, DARK_SPAN = (0.0, 0.9), (0.42, 1.0)
 """Part of the palette used on a light and on a dark sheet: its far end would not stand off the ground."""
 THIN_STEP = 1.5
 """px between the points of a drawn path."""
+COLOUR_STEP, COLOUR_RUNS, LONGEST_COLOUR = 8.0, 300.0, 60.0
+"""px: least length of one colour; a long path has about so many stretches of one colour, none longer than the last, px."""
 TICK_STEP, TICK_SIZE = 5.0, 6.0
 """px between the ticks that mark slipping, and their length."""
 HALO = 1.75
@@ -62,8 +64,18 @@ class Stroke(NamedTuple):
 
 def thin(stroke: Stroke) -> Stroke:
     """The path with no more points than can be seen."""
-    kept = thinned(stroke.points, THIN_STEP, stroke.level * 4 + stroke.regime)
-    return Stroke(stroke.points[kept], stroke.level[kept], stroke.regime[kept])
+    level = _held(stroke.points, stroke.level)
+    kept = thinned(stroke.points, THIN_STEP, level * 4 + stroke.regime)
+    return Stroke(stroke.points[kept], level[kept], stroke.regime[kept])
+
+
+def _held(points: Array, level: Indices) -> Indices:
+    """Levels that change no more often than can be told apart."""
+    along = np.concatenate([[0.0], np.cumsum(np.hypot(*np.diff(points, axis=0).T))])
+    step = max(COLOUR_STEP, min(LONGEST_COLOUR, float(along[-1]) / COLOUR_RUNS))
+    bins = np.floor(along / step).astype(np.int64)
+    first = np.concatenate([[True], np.diff(bins) != 0])
+    return level[np.maximum.accumulate(np.where(first, np.arange(len(level)), 0))]
 
 
 def draw_path(painter: QPainter, stroke: Stroke, colours: Sequence[QColor], width: float) -> None:

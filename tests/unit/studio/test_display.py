@@ -56,6 +56,12 @@ def test_load_on_a_level_wall_is_the_weight(path):
     assert path.load[1] == pytest.approx(math.cos(math.atan(0.03)), abs=2e-3)
 
 
+def test_wall_angle_is_known_on_the_track_only():
+    path = display.path_of(roll(funnel_run()))
+    assert np.isfinite(path.angle[path.element == 0]).all()
+    assert np.isnan(path.angle[path.element == 1]).all()
+
+
 def test_moment_reads_between_samples_and_stays_within_the_roll(path):
     i = len(path.t) // 2
     middle = display.moment_at(path, 0.5 * (path.t[i] + path.t[i + 1]))
@@ -130,13 +136,28 @@ def test_orientation_at_a_sample_is_that_of_the_sample(path):
 
 
 # -- lines of many colours ------------------------------------------------------------------------
-def test_thinned_line_keeps_ends_changes_and_steps():
+def test_thinned_straight_line_keeps_ends_and_changes():
     points = np.stack([np.linspace(0.0, 100.0, 1001), np.zeros(1001)], axis=1)
     keys = (np.arange(1001) >= 503).astype(np.int64)
-    kept = display.thinned(points, 2.0, keys)
+    kept = display.thinned(points, 1.5, keys)
     assert kept[0] == 0 and kept[-1] == 1000 and 503 in kept
-    assert np.diff(points[kept, 0]).max() <= 2.0 + 0.2
-    assert len(kept) <= 54
+    assert np.diff(points[kept, 0]).max() <= display.LONGEST_CHORD + 0.2
+    assert len(kept) <= 7
+
+
+@pytest.mark.parametrize("radius", [3.0, 40.0, 400.0])
+def test_thinned_circle_looks_the_same(radius):
+    turn = np.linspace(0.0, 4.0 * math.pi, 20001)
+    points = radius * np.stack([np.cos(turn), np.sin(turn)], axis=1)
+    kept = display.thinned(points, 1.5, np.zeros(20001, dtype=np.int64))
+    middle = 0.5 * (points[kept][1:] + points[kept][:-1])
+    assert radius - np.hypot(middle[:, 0], middle[:, 1]).min() < 1.5 * display.MISS
+    assert len(kept) < 0.5 * 4.0 * math.pi * radius / 1.5 or radius < 10.0
+
+
+def test_thinned_line_keeps_a_turn_back():
+    points = np.array([[0.0, 0.0], [50.0, 0.0], [90.0, 0.0], [50.0, 0.5], [0.0, 1.0]])
+    assert 2 in display.thinned(points, 1.5, np.zeros(5, dtype=np.int64))
 
 
 def test_runs_cover_the_line_without_gaps():
