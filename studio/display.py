@@ -19,7 +19,7 @@ from engine.findings.finding import Finding
 from engine.geometry.tables import interpolate
 from engine.integrate.result import LOSSES, Regime
 from engine.model.design import Design
-from engine.placement import Layout, Placed, lay_out
+from engine.placement import Layout, lay_out
 
 if TYPE_CHECKING:
     from engine.simulate import Roll
@@ -331,45 +331,3 @@ def orientation_at(path: BallPath, moment: Moment) -> Array:
     share = 0.5 * since / span if span > 0.0 else 0.0
     mean = path.spin[i] + share * (path.spin[i + 1] - path.spin[i])
     return quaternion_product(turn_quaternions(mean * since), path.orientation[i])
-
-
-# -- what a person may take hold of ---------------------------------------------------------------
-class Grip(NamedTuple):
-    """A place that may be dragged: of which element, what (inlet, outlet, centre, point), its number, where (3,) m."""
-
-    element: str
-    role: str
-    number: int
-    place: Array
-
-
-def grips_of(entry: Placed) -> list[Grip]:
-    """Places of an element that may be dragged."""
-    found, key = [], entry.element.id
-    if entry.meridian is not None and entry.origin is not None:
-        found.append(Grip(key, "centre", 0, entry.origin))
-    centre = centre_of(entry)
-    if centre is not None:
-        found.append(Grip(key, "centre", 0, centre))
-    found.append(Grip(key, "inlet", 0, entry.inlet.position))
-    if entry.outlet is not None and entry.meridian is None:
-        found.append(Grip(key, "outlet", 0, entry.outlet.position))
-    points = getattr(entry.element, "points", ())
-    if points and entry.curve is not None:
-        level = entry.inlet.forward
-        left = np.array([-level[1], level[0], 0.0])
-        axes = np.stack([level, left, [0.0, 0.0, 1.0]])
-        places = entry.inlet.position + np.array(points[:-1]).reshape(-1, 3) @ axes
-        found.extend(Grip(key, "point", number, place) for number, place in enumerate(places))
-    return found
-
-
-def centre_of(entry: Placed) -> Array | None:
-    """Centre (3,) of a bend or helix at the height of its inlet; None for others."""
-    turn = getattr(entry.element, "turn", None) or getattr(entry.element, "turns", None)
-    radius = getattr(entry.element, "radius", None)
-    if entry.element.kind not in ("bend", "helix") or turn is None or radius is None:
-        return None
-    level = entry.inlet.forward
-    left = np.array([-level[1], level[0], 0.0])
-    return np.asarray(entry.inlet.position + math.copysign(radius, turn) * left)

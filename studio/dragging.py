@@ -1,10 +1,11 @@
-"""What dragging a grip does to the design: a place in, an edited design out. No Qt.
+"""Grips of an element, and what dragging one does to the design: a place in, an edited design out. No Qt.
 
 Lengths are rounded to a step that suits the scale of the drawing, angles to whole degrees, so that what was dragged has
 numbers one would have typed.
 """
 
 import math
+from typing import NamedTuple
 
 import numpy as np
 
@@ -13,7 +14,7 @@ from engine.model.edits import path_to_element, set_field
 from engine.model.elements import Bend, Deck, Easing, FreeLine, Gap, Helix, Straight, Transition, Tray
 from engine.placement import Layout, Placed
 from engine.units import DEGREE
-from studio.display import Array, Grip
+from studio.display import Array
 
 LEAST_LENGTH = 1e-3
 """m. Nothing is dragged shorter than this."""
@@ -22,6 +23,48 @@ LEAST_RADIUS = 5e-3
 """m."""
 
 
+class Grip(NamedTuple):
+    """A place that may be dragged: of which element, what (inlet, outlet, centre, point), its number, where (3,) m."""
+
+    element: str
+    role: str
+    number: int
+    place: Array
+
+
+def grips_of(entry: Placed) -> list[Grip]:
+    """Places of an element that may be dragged."""
+    found, key = [], entry.element.id
+    if entry.meridian is not None and entry.origin is not None:
+        found.append(Grip(key, "centre", 0, entry.origin))
+    centre = centre_of(entry)
+    if centre is not None:
+        found.append(Grip(key, "centre", 0, centre))
+    found.append(Grip(key, "inlet", 0, entry.inlet.position))
+    if entry.outlet is not None and entry.meridian is None:
+        found.append(Grip(key, "outlet", 0, entry.outlet.position))
+    points = getattr(entry.element, "points", ())
+    if points and entry.curve is not None:
+        level = entry.inlet.forward
+        left = np.array([-level[1], level[0], 0.0])
+        axes = np.stack([level, left, [0.0, 0.0, 1.0]])
+        places = entry.inlet.position + np.array(points[:-1]).reshape(-1, 3) @ axes
+        found.extend(Grip(key, "point", number, place) for number, place in enumerate(places))
+    return found
+
+
+def centre_of(entry: Placed) -> Array | None:
+    """Centre (3,) of a bend or helix at the height of its inlet; None for others."""
+    turn = getattr(entry.element, "turn", None) or getattr(entry.element, "turns", None)
+    radius = getattr(entry.element, "radius", None)
+    if entry.element.kind not in ("bend", "helix") or turn is None or radius is None:
+        return None
+    level = entry.inlet.forward
+    left = np.array([-level[1], level[0], 0.0])
+    return np.asarray(entry.inlet.position + math.copysign(radius, turn) * left)
+
+
+# -- in the plan ----------------------------------------------------------------------------------
 def rounded(value: float, step: float) -> float:
     """Value on a multiple of a step, without the noise of the division."""
     return round(round(value / step) * step, 9)

@@ -11,16 +11,14 @@ from engine.errors import TrundleError
 from studio.display import (
     Array,
     BallPath,
-    Grip,
     finding_place,
-    grips_of,
     layout_of,
     levels_of,
     moment_at,
     path_of,
     shown_findings,
 )
-from studio.dragging import dragged
+from studio.dragging import Grip, dragged, grips_of
 from studio.outlines import Outline, nearest_outline, outlines_of
 from studio.theme import Theme
 from studio.views import plan_words

@@ -9,7 +9,7 @@ from PySide6.QtGui import QPainter
 
 from engine.model.elements import SegmentBase, VesselBase
 from engine.units import DEGREE, display
-from studio.display import centre_of
+from studio.dragging import centre_of
 from studio.resources import USUAL
 from studio.widgets.strokes import Ink, Labels, draw_text, font_of, pen, round_about, small_ink, text_size
 

@@ -20,7 +20,7 @@ LIGHT_SPAN, DARK_SPAN = (0.0, 0.9), (0.42, 1.0)
 THIN_STEP = 1.5
 """px between the points of a drawn path."""
 COLOUR_STEP, COLOUR_RUNS, LONGEST_COLOUR = 8.0, 300.0, 60.0
-"""px: least length of one colour; a long path has about so many stretches of one colour, none longer than the last, px."""
+"""px: least length of one colour; a long path has about so many stretches of a colour, none longer than the last."""
 TICK_STEP, TICK_SIZE = 5.0, 6.0
 """px between the ticks that mark slipping, and their length."""
 HALO = 1.75

@@ -9,6 +9,7 @@ from engine.integrate.result import LOSSES, Regime
 from engine.placement import lay_out
 from engine.simulate import roll
 from studio import display
+from studio.dragging import grips_of
 from studio.outlines import distance_to_line, hull, inside, nearest_outline, outlines_of, stretches
 from studio.panels import panels_of, rotated
 from studio.stage import ribbon, stage_of
@@ -217,7 +218,7 @@ def test_one_mark_for_each_kind_in_each_element():
 # -- grips ----------------------------------------------------------------------------------------
 def test_grips_of_a_bend_are_its_ends_and_its_centre():
     entry = lay_out(bend_run(radius=0.15)).placed[1]
-    grips = {grip.role: grip.place for grip in display.grips_of(entry)}
+    grips = {grip.role: grip.place for grip in grips_of(entry)}
     assert set(grips) == {"inlet", "outlet", "centre"}
     for end in ("inlet", "outlet"):
         assert np.hypot(*(grips[end] - grips["centre"])[:2]) == pytest.approx(0.15)
@@ -225,7 +226,7 @@ def test_grips_of_a_bend_are_its_ends_and_its_centre():
 
 def test_grips_of_a_free_line_are_its_points():
     entry = next(entry for entry in lay_out(every_kind()).placed if entry.element.id == "l1")
-    points = [grip.place for grip in display.grips_of(entry) if grip.role == "point"]
+    points = [grip.place for grip in grips_of(entry) if grip.role == "point"]
     ends = np.array(entry.element.points)
     assert len(points) == len(ends) - 1
     assert np.linalg.norm(points[0] - entry.inlet.position) == pytest.approx(np.linalg.norm(ends[0]))

@@ -6,8 +6,7 @@ import pytest
 from engine.model.design import Design, OutletStart, Run
 from engine.model.elements import Deck, Easing, FreeLine, Gap, Straight, Transition
 from engine.placement import lay_out
-from studio.display import Grip, grips_of
-from studio.dragging import dragged, raised, rounded
+from studio.dragging import Grip, dragged, grips_of, raised, rounded
 from tests.designs import bend_run, funnel_run, helix_run, single_run
 
 STEP = 0.001
