@@ -30,8 +30,13 @@ WORST = 10
 
 def sources() -> list[Path]:
     """Return the Python files of the program."""
-    names = subprocess.run(["git", "ls-files", "engine/*.py", "studio/*.py", "packaging/*.py"], cwd=ROOT,
-                           capture_output=True, text=True, check=True).stdout.split()
+    names = subprocess.run(
+        ["git", "ls-files", "engine/*.py", "studio/*.py", "packaging/*.py"],
+        cwd=ROOT,
+        capture_output=True,
+        text=True,
+        check=True,
+    ).stdout.split()
     return [ROOT / name for name in names if (ROOT / name).exists()]
 
 
@@ -77,13 +82,16 @@ def main() -> int:
                 if arguments(node) > ARGUMENT_LIMIT and f"{name} {node.name}" not in MANY_ARGUMENTS:
                     problems.append(f"{where} takes {arguments(node)} arguments ({ARGUMENT_LIMIT} at most)")
     problems += [f"{name} has {lines} lines ({FILE_LIMIT} at most)" for lines, name in files if lines > FILE_LIMIT]
-    problems += [f"{where} has {lines} lines ({FUNCTION_LIMIT} at most)" for lines, where in functions
-                 if lines > FUNCTION_LIMIT]
+    problems += [
+        f"{where} has {lines} lines ({FUNCTION_LIMIT} at most)" for lines, where in functions if lines > FUNCTION_LIMIT
+    ]
     median = statistics.median(lines for lines, _ in functions)
     if median > MEDIAN_LIMIT:
         problems.append(f"the median function has {median} lines ({MEDIAN_LIMIT} at most)")
-    print(f"{len(files)} files, median {statistics.median(n for n, _ in files):.0f} lines; "
-          f"{len(functions)} functions, median {median:.0f} lines")
+    print(
+        f"{len(files)} files, median {statistics.median(n for n, _ in files):.0f} lines; "
+        f"{len(functions)} functions, median {median:.0f} lines"
+    )
     for title, rows in (("longest files", files), ("longest functions", functions)):
         print(title + ": " + ", ".join(f"{where} {lines}" for lines, where in sorted(rows, reverse=True)[:WORST]))
     print("\n".join(problems) or "every size is within its limit")
