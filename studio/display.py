@@ -261,7 +261,8 @@ def thinned(points: Array, step: float, keys: Indices) -> Indices:
     density = np.clip(np.sqrt(curvature / (8.0 * MISS)), 1.0 / LONGEST_CHORD, 1.0 / step)
     bins = np.floor(np.concatenate([[0.0], np.cumsum(density * size)]))
     kept = np.ones(len(points), dtype=bool)
-    kept[1:-1] = (bins[1:-1] != bins[:-2]) | (keys[1:-1] != keys[:-2])
+    step_up = np.diff(bins)
+    kept[1:-1] = (step_up[:-1] > 0.0) | (step_up[1:] > 1.0) | (keys[1:-1] != keys[:-2])
     return np.flatnonzero(kept)
 
 

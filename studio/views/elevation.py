@@ -9,6 +9,7 @@ from PySide6.QtGui import QKeyEvent, QPainter
 from PySide6.QtWidgets import QWidget
 
 from engine.errors import TrundleError
+from engine.findings.finding import Severity
 from engine.integrate.result import Regime
 from studio.display import (
     Array,
@@ -235,7 +236,7 @@ class ElevationView(Canvas):
             labels.take(QRectF(at.x() - 0.5 * MARK, at.y() - 0.5 * MARK, MARK, MARK))
         ink = small_ink(self.theme, self.font(), "ink")
         for finding, at in inside:
-            if finding.severity.value != "note":
+            if finding.severity is not Severity.NOTE:
                 words = finding_title(self.workspace, finding).split(":")[0].lower()
                 write_about(painter, labels, at, words, ink, MARK)
 

@@ -8,6 +8,7 @@ from PySide6.QtGui import QBrush, QPainter, QPolygonF
 from PySide6.QtWidgets import QWidget
 
 from engine.errors import TrundleError
+from engine.findings.finding import Finding, Severity
 from studio.display import (
     Array,
     BallPath,
@@ -116,8 +117,9 @@ class PlanView(Canvas):
             self._paint_outline(painter, outline)
         self._paint_path(painter)
         self._take_grips(labels)
+        marked = self._paint_findings(painter, labels)
         plan_words.write_selected(painter, self, labels)
-        self._paint_findings(painter, labels)
+        self._name_findings(painter, labels, marked)
         for grip, at in self.grips:
             draw_grip(painter, at, self.theme, held=self._is_held(grip))
         self._paint_scale(painter, labels)
@@ -185,23 +187,23 @@ class PlanView(Canvas):
         draw_slip(painter, stroke, self.theme.colour("warning"), 2.5)
         painter.setOpacity(1.0)
 
-    def _paint_findings(self, painter: QPainter, labels: Labels) -> None:
+    def _paint_findings(self, painter: QPainter, labels: Labels) -> list[tuple[Finding, QPointF]]:
+        """Marks of the findings, the worst on top; return them with their places on screen."""
         roll = self.workspace.roll
         if roll is None or not self.workspace.current:
-            return
-        ink = small_ink(self.theme, self.font(), "ink")
-        shown = shown_findings(roll.findings)
-        for finding in reversed(shown):
-            place = finding_place(finding, self.layout_now)
-            if place is None:
-                continue
-            at = self.point(place[0], place[1])
+            return []
+        places = [(finding, finding_place(finding, self.layout_now)) for finding in shown_findings(roll.findings)]
+        marked = [(finding, self.point(place[0], place[1])) for finding, place in places if place is not None]
+        for finding, at in reversed(marked):
             draw_finding(painter, finding, at, self.theme)
             labels.take(QRectF(at.x() - 0.5 * MARK, at.y() - 0.5 * MARK, MARK, MARK))
-        for finding in shown:
-            place = finding_place(finding, self.layout_now)
-            if place is not None and finding.severity.value != "note":
-                at = self.point(place[0], place[1])
+        return marked
+
+    def _name_findings(self, painter: QPainter, labels: Labels, marked: list[tuple[Finding, QPointF]]) -> None:
+        """Words beside all marks but those of notes."""
+        ink = small_ink(self.theme, self.font(), "ink")
+        for finding, at in marked:
+            if finding.severity is not Severity.NOTE:
                 words = finding_title(self.workspace, finding).split(":")[0].lower()
                 plan_words.write_about(painter, labels, at, words, ink, MARK)
 

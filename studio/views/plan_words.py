@@ -146,8 +146,8 @@ def _write_name(painter: QPainter, labels: Labels, box: QRectF, words: tuple[str
     middle = box.center().x() - 0.5 * width
     below, above = QPointF(middle, box.bottom() + 6.0), QPointF(middle, box.top() - height - 6.0)
     beside = [
-        QPointF(box.right() + 8.0, box.center().y() - 0.5 * height),
-        QPointF(box.left() - width - 8.0, box.center().y() - 0.5 * height),
+        QPointF(box.right() + 12.0, box.center().y() - 0.5 * height),
+        QPointF(box.left() - width - 12.0, box.center().y() - 0.5 * height),
     ]
     inner = QPointF(middle, box.center().y() - 0.5 * height)
     at = labels.place((width, height), [below, above, *beside, inner], needed=needed)

@@ -156,6 +156,12 @@ def test_thinned_circle_looks_the_same(radius):
     assert len(kept) < 0.5 * 4.0 * math.pi * radius / 1.5 or radius < 10.0
 
 
+def test_thinned_line_keeps_the_corner_before_a_jump():
+    points = np.concatenate([np.stack([np.linspace(0.0, 60.0, 400), np.zeros(400)], axis=1), [[60.0, 80.0]]])
+    kept = display.thinned(points, 1.5, np.zeros(401, dtype=np.int64))
+    assert kept[-2:].tolist() == [399, 400]
+
+
 def test_thinned_line_keeps_a_turn_back():
     points = np.array([[0.0, 0.0], [50.0, 0.0], [90.0, 0.0], [50.0, 0.5], [0.0, 1.0]])
     assert 2 in display.thinned(points, 1.5, np.zeros(5, dtype=np.int64))
