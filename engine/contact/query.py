@@ -31,6 +31,8 @@ ANYWHERE = (np.int64(-1), 0.0)
 that takes a guess would be compiled twice (75 s in all, with this 49 s)."""
 FAR = 1e9
 """m. Gap of a wall that cannot be touched from here."""
+FOOT_SPEED = 4.0
+"""Times as fast as the ball its foot on a wall may move: a hollow of radius 4/3 r, tighter than any a ball should roll in."""
 FULL_CIRCLE = 2.0 * math.pi - 1e-9
 
 
@@ -328,8 +330,32 @@ def nearest_wall(walls, y, r, active, before):
         elif foot.gap < 0.0 and is_full_tube(walls, patch):
             free = min(free, max(off, entry_distance(walls, patch, point)))
         else:
-            free = min(free, max(off, 0.0))
+            free = min(free, max(off, way_into(walls, patch, foot, r)))
     return best, found, free
+
+
+@kernel
+def way_into(walls, patch, foot, r):
+    """Return a way that a ball must at least travel before its foot comes within the boundaries of a patch, m.
+
+    Along a curve or profile the foot moves at most FOOT_SPEED times as fast as the ball. Round a curve the ball must reach the
+    wedge of allowed angles: at distance rho and an angle d beyond it, rho sin d (rho from a right angle on).
+    """
+    way = 0.0
+    kind = walls.kind[patch]
+    for side in range(6):
+        over = -boundary(walls, patch, foot, side)
+        if over <= 0.0:
+            continue
+        if kind == PLANE:
+            way = max(way, over)
+        elif side < 2:
+            way = max(way, over / FOOT_SPEED)
+        else:
+            sign = -1.0 if kind == SWEPT_INSIDE else 1.0
+            rho = walls.number[patch, 0] + sign * (foot.gap + r)
+            way = max(way, max(rho, 0.0) * math.sin(min(over, 0.5 * math.pi)))
+    return way
 
 
 @kernel

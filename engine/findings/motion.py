@@ -163,29 +163,32 @@ def _two_walls(rolled: Rolled) -> Finding:
 
 
 def slipping(rolled: Rolled) -> list[Finding]:
-    """Find where the ball slips for longer and faster than can be seen."""
-    found = []
+    """Find, once for each element, where the ball slips for longer and faster than can be seen."""
     track = rolled.track
+    spans: dict[int, list[tuple[int, int]]] = {}
     for first, last in stretches(track.regime == Regime.SLIPPING):
-        span = track.t[last] - track.t[first]
-        worst = first + int(np.argmax(track.slip_speed[first : last + 1]))
-        if span < limit("slip_time") or track.slip_speed[worst] < limit("slip_speed"):
-            continue
-        entry = rolled.placed(first)
-        speed = float(track.slip_speed[worst])
-        found.append(
-            Finding(
-                kind=FindingKind.SLIP,
-                severity=Severity.NOTE,
-                value=speed,
-                limit=limit("slip_speed"),
-                unit="m/s",
-                sentence=f"The ball slips in {name_of(entry)} for {span:.2f} s, at up to {speed:.2f} m/s.",
-                cure="Ease the joint before it, bank it for the arriving speed, or lower the speed.",
-                **at_sample(rolled, first),  # type: ignore[arg-type]
-            )
-        )
-    return found
+        lasts = track.t[last] - track.t[first] >= limit("slip_time")
+        if lasts and track.slip_speed[first : last + 1].max() >= limit("slip_speed"):
+            spans.setdefault(int(track.element[first]), []).append((first, last))
+    return [_slip(rolled, found) for found in spans.values()]
+
+
+def _slip(rolled: Rolled, spans: list[tuple[int, int]]) -> Finding:
+    track, first = rolled.track, spans[0][0]
+    entry = rolled.placed(first)
+    total = sum(float(track.t[last] - track.t[start]) for start, last in spans)
+    speed = max(float(track.slip_speed[start : last + 1].max()) for start, last in spans)
+    times = "" if len(spans) == 1 else f" in {len(spans)} places"
+    return Finding(
+        kind=FindingKind.SLIP,
+        severity=Severity.NOTE,
+        value=speed,
+        limit=limit("slip_speed"),
+        unit="m/s",
+        sentence=f"The ball slips in {name_of(entry)} for {total:.2f} s{times}, at up to {speed:.2f} m/s.",
+        cure="Ease the joint before it, bank it for the arriving speed, or lower the speed.",
+        **at_sample(rolled, first),  # type: ignore[arg-type]
+    )
 
 
 def flights(rolled: Rolled) -> list[Finding]:
@@ -196,7 +199,10 @@ def flights(rolled: Rolled) -> list[Finding]:
         start = rolled.placed(first)
         end = rolled.placed(min(last + 1, len(track.t) - 1))
         span = float(track.t[last] - track.t[first])
-        if span < limit("flight_time") or start is None or end is not start or start.curve is None:
+        last_flight = last >= len(track.t) - 2
+        if span < limit("flight_time") or start is None or end is not start or start.curve is None or last_flight:
+            continue
+        if -start.curve[:, 6].min() > limit("drop"):
             continue
         found.append(
             Finding(

@@ -107,15 +107,30 @@ def guard_at(walls, ball, mode, work, place):
 
 
 @kernel
+def last_above(walls, ball, mode, work, place):
+    """Return (share, value) of a place in the step at which a guard that starts at zero is above it; value 0 if there is none."""
+    high, slot, piece, q, heading = place
+    theta = high
+    for _ in range(HALVINGS):
+        theta *= 0.5
+        value = guard_at(walls, ball, mode, work, (theta, slot, piece, q, heading))
+        if value > 0.0:
+            return theta, value
+    return 0.0, 0.0
+
+
+@kernel
 def locate_guard(walls, ball, mode, work, place):
     """Return the share of the step at which a guard that ends below zero reaches zero (Illinois rule).
 
     `place` = (high, slot, value at the start, piece, q, heading), with the guard below zero at the share `high`.
     """
     high, slot, start, piece, q, heading = place
-    if start <= 0.0:
-        return 0.0
     low, f_low = 0.0, start
+    if start <= 0.0:
+        low, f_low = last_above(walls, ball, mode, work, (high, slot, piece, q, heading))
+        if f_low <= 0.0:
+            return 0.0
     f_high = guard_at(walls, ball, mode, work, (high, slot, piece, q, heading))
     if f_high >= 0.0:
         return high
