@@ -30,12 +30,22 @@ def put_back(walls, ball, mode, y, guess):
     y[5] -= vn * nz
     if mode.regime == ROLLING:
         spin = y[6] * nx + y[7] * ny + y[8] * nz
-        if mode.spin == 0 and abs(spin) < STOPPED_SPIN:
-            spin = 0.0
+        if mode.spin == 0:
+            spin = 0.0  # held: what is there is error
         y[6] = (ny * y[5] - nz * y[4]) / r + spin * nx
         y[7] = (nz * y[3] - nx * y[5]) / r + spin * ny
         y[8] = (nx * y[4] - ny * y[3]) / r + spin * nz
     return abs(foot.gap)
+
+
+@kernel
+def still_spin(walls, ball, patch, y):
+    """Take the spin about the normal out of the state: it has come to zero."""
+    foot = foot_on(walls, patch, (y[0], y[1], y[2]), ball.radius, ANYWHERE)
+    spin = y[6] * foot.nx + y[7] * foot.ny + y[8] * foot.nz
+    y[6] -= spin * foot.nx
+    y[7] -= spin * foot.ny
+    y[8] -= spin * foot.nz
 
 
 @kernel

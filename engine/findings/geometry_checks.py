@@ -200,7 +200,13 @@ def _nearest(one: Placed, two: Placed) -> tuple[float, float]:
         return math.inf, 0.0
     a, b = points_along(one.curve), points_along(two.curve)
     square = ((a[:, None, 1:4] - b[None, :, 1:4]) ** 2).sum(axis=2)
+    if one.run == two.run:
+        # what follows closely along the run is near by design
+        apart = np.abs((two.start + b[None, :, 0]) - (one.start + a[:, None, 0]))
+        square = np.where(apart < math.pi * (outer_radius(one) + outer_radius(two)), np.inf, square)
     i, j = np.unravel_index(int(np.argmin(square)), square.shape)
+    if not math.isfinite(square[i, j]):
+        return math.inf, 0.0
     return float(math.sqrt(square[i, j]) - outer_radius(one) - outer_radius(two)), float(a[i, 0])
 
 

@@ -10,7 +10,8 @@ from engine.constants import IMPACT_ROUNDS, REST_IMPACT
 from engine.contact.query import ANYWHERE, foot_on
 from engine.contact.surface import EXIT, OPEN, RESTITUTION, ROLE_CATCH, ROLE_FLOOR
 from engine.dynamics.impact import strike
-from engine.dynamics.phases import holds_still, mode_on, put_back, rest_mode, stop
+from engine.dynamics.phases import holds_still, mode_on, put_back, rest_mode, spin_sign, still_spin, stop
+from engine.dynamics.rates import contact_rates
 from engine.dynamics.state import FLIGHT, ROLLING, SLIPPING, Mode
 from engine.integrate.events import CONE, LIFT, SIDE, SLIP, STOP
 from engine.kernel import kernel
@@ -68,8 +69,21 @@ def after_guard(walls, ball, mode, y, event, out):
         return after_stop(walls, ball, mode, y, out)
     if slot >= SIDE:
         return after_boundary(walls, ball, mode, y, slot - SIDE, out)
-    new = mode_on(walls, ball, mode.patch, y, out)
-    return plain(new, QUIET, mode.patch, 0.0)
+    return after_spin(walls, ball, mode, y, out)
+
+
+@kernel
+def after_spin(walls, ball, mode, y, out):
+    """Return what follows when the spin about the normal comes to zero, or what feeds it outgrows spin friction.
+
+    A spin that was held is let go the way it is fed, whatever rounding says of the two sizes: else it would be held
+    again at once.
+    """
+    still_spin(walls, ball, mode.patch, y)
+    contact = contact_rates(walls, ball, mode, y, ANYWHERE, out)
+    if mode.spin != 0:
+        return plain(Mode(mode.patch, ROLLING, 0, spin_sign(contact)), QUIET, mode.patch, 0.0)
+    return plain(Mode(mode.patch, ROLLING, 0, 1 if contact.feed > 0.0 else -1), QUIET, mode.patch, 0.0)
 
 
 @kernel
