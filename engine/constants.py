@@ -29,9 +29,9 @@ STOPPED_SPIN = 1e-7
 """rad/s. Spin about the normal slower than this counts as none when spin friction acts."""
 
 # -- impact ---------------------------------------------------------------------------------------
-REST_IMPACT = 2e-3
+REST_IMPACT = 1e-2
 """m/s. A ball that would leave an impact slower than this stays on the wall: no endless bouncing.
-2 mm/s is a hop of 0.2 micrometre. The energy is booked as lost in impact."""
+10 mm/s is a hop of 5 micrometres, less than the roughness of any wall. The energy is booked as lost in impact."""
 IMPACT_ROUNDS = 20
 """Alternating impulses between two walls met at once before both are taken as inelastic."""
 CHATTER_COUNT = 400

@@ -133,8 +133,8 @@ def wall() -> Design:
     chain.straight(0.15, OPEN)
     chain.straight(0.08)
     chain.add(
-        Funnel, "funnel", profile=Power(exponent=0.9), rim_radius=0.15, throat_radius=0.0145, depth=0.12,
-        inlet_drop=0.02, inlet_angle=0.45, hand=-1, pair="steel-pla",
+        Funnel, "funnel", profile=Power(exponent=0.9), rim_radius=0.12, throat_radius=0.0145, depth=0.12,
+        inlet_drop=0.02, inlet_angle=0.7, hand=-1, pair="steel-pla",
     )
     chain.add(FreeLine, "drop", points=((0.0, 0.0, -0.05), (0.03, 0.0, -0.12), (0.12, 0.0, -0.17), (0.26, 0.0, -0.187)),
               section=CLEAR)

@@ -179,41 +179,54 @@ def outer_radius(entry: Placed) -> float:
 def clashes(rolled: Rolled) -> list[Finding]:
     """Find segments that run through each other (neighbours in a run meet by design)."""
     entries = [entry for entry in rolled.layout.placed if entry.curve is not None]
-    boxes = [entry.bounds() + np.array([[-1.0], [1.0]]) * 0.01 for entry in entries]
+    if len(entries) < 2:
+        return []
+    boxes = np.stack([entry.bounds() for entry in entries])
+    wall = np.array([outer_radius(entry) - (entry.bore or 0.0) for entry in entries])[:, None]
+    low, high = boxes[:, 0] - wall, boxes[:, 1] + wall
+    meet = ((low[:, None] < high[None]) & (low[None] < high[:, None])).all(axis=2)
     found = []
-    for i, one in enumerate(entries):
-        for j in range(i + 1, len(entries)):
-            two = entries[j]
-            if one.run == two.run and abs(one.index - two.index) == 1:
-                continue
-            if (boxes[i][0] > boxes[j][1]).any() or (boxes[j][0] > boxes[i][1]).any():
-                continue
-            gap, s = _nearest(one, two)
-            if gap < limit("clash"):
-                found.append(_clash(rolled, one, two, gap, s))
+    for i, j in zip(*np.nonzero(np.triu(meet, 1)), strict=True):
+        one, two = entries[int(i)], entries[int(j)]
+        if one.run == two.run and abs(one.index - two.index) == 1:
+            continue
+        gap, s = _nearest(one, two)
+        if gap < limit("clash"):
+            found.append(_clash(rolled, one, two, gap, s))
     return found
+
+
+COARSE, FINE = 0.02, 0.002
+"""m. Spacing of the points between which two segments are compared, and of those near the closest pair."""
 
 
 def _nearest(one: Placed, two: Placed) -> tuple[float, float]:
     """Return the room between two segments (m, negative: overlap) and the place on the first."""
     if one.curve is None or two.curve is None:
         return math.inf, 0.0
-    a, b = points_along(one.curve), points_along(two.curve)
-    square = ((a[:, None, 1:4] - b[None, :, 1:4]) ** 2).sum(axis=2)
-    if one.run == two.run:
-        # what follows closely along the run is near by design
-        apart = np.abs((two.start + b[None, :, 0]) - (one.start + a[:, None, 0]))
-        square = np.where(apart < math.pi * (outer_radius(one) + outer_radius(two)), np.inf, square)
-    i, j = np.unravel_index(int(np.argmin(square)), square.shape)
-    if not math.isfinite(square[i, j]):
-        return math.inf, 0.0
-    return float(math.sqrt(square[i, j]) - outer_radius(one) - outer_radius(two)), float(a[i, 0])
+    ends = [(float(entry.curve[0, 0]), float(entry.curve[-1, 0])) for entry in (one, two) if entry.curve is not None]
+    touching = outer_radius(one) + outer_radius(two)
+    for spacing in (COARSE, FINE):
+        a, b = (points_along(entry.curve, span, spacing) for entry, span in ((one, ends[0]), (two, ends[1])))
+        square = ((a[:, None, 1:4] - b[None, :, 1:4]) ** 2).sum(axis=2)
+        if one.run == two.run:
+            # what follows closely along the run is near by design
+            apart = np.abs((two.start + b[None, :, 0]) - (one.start + a[:, None, 0]))
+            square = np.where(apart < math.pi * touching, np.inf, square)
+        i, j = np.unravel_index(int(np.argmin(square)), square.shape)
+        nearest = math.sqrt(square[i, j])
+        if nearest > touching + spacing:
+            break
+        ends = [(float(a[i, 0]) - COARSE, float(a[i, 0]) + COARSE), (float(b[j, 0]) - COARSE, float(b[j, 0]) + COARSE)]
+    return nearest - touching, float(a[i, 0])
 
 
-def points_along(curve: Array, spacing: float = 0.01) -> Array:
-    """Return rows (s, x, y, z) along a centreline, no farther apart than `spacing` m (chords between the knots)."""
-    count = max(2, int(math.ceil((curve[-1, 0] - curve[0, 0]) / spacing)) + 1)
-    s = np.linspace(curve[0, 0], curve[-1, 0], count)
+def points_along(curve: Array | None, span: tuple[float, float], spacing: float) -> Array:
+    """Return rows (s, x, y, z) along part of a centreline, no farther apart than `spacing` m (chords between the knots)."""
+    if curve is None:
+        return np.zeros((0, 4))
+    low, high = max(span[0], float(curve[0, 0])), min(span[1], float(curve[-1, 0]))
+    s = np.linspace(low, high, max(2, math.ceil((high - low) / spacing) + 1))
     return np.column_stack([s, *(np.interp(s, curve[:, 0], curve[:, k]) for k in (1, 2, 3))])
 
 
