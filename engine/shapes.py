@@ -38,6 +38,9 @@ from engine.model.elements import (
     Well,
 )
 
+SHARP = 1e-6
+"""m. A fillet of a smaller radius is drawn as a sharp edge: it is far below what a printer or a lathe leaves."""
+
 CACHE_SIZE = 4096
 """Shapes kept: some ten edits of a design of 400 elements. A curve takes about 10 kB."""
 ENTRY_DIGITS = 13
@@ -164,8 +167,9 @@ def _stretched(points: tuple[tuple[float, float], ...], rim: tuple[float, float]
 
 
 def _well(element: Well) -> Array:
-    radius, depth, top = element.radius, element.depth, element.rim_fillet
-    fillet = element.floor_fillet if element.floor else 0.0
+    radius, depth = element.radius, element.depth
+    top = element.rim_fillet if element.rim_fillet > SHARP else 0.0
+    fillet = element.floor_fillet if element.floor and element.floor_fillet > SHARP else 0.0
     parts = []
     if top > 0.0:
         parts.append(profiles.arc((radius + top, -top), top, (0.5 * math.pi, math.pi)))

@@ -102,6 +102,18 @@ def desk_run() -> Design:
     )
 
 
+def crest_run() -> Design:
+    """Return a level trough, `s1`, that falls away over `e1` too fast for the ball to follow, `s2` and a catch tray."""
+    section = Trough()
+    return single_run(
+        Straight(id="s1", length=0.3, grade=0.0, section=section),
+        Easing(id="e1", length=0.15, grade_start=0.0, grade_end=0.6, section=section),
+        Straight(id="s2", length=0.3, grade=0.6, section=section),
+        Tray(id="tray1", drop=0.05, length=0.6, width=0.3),
+        release=Release(speed=1.5),
+    )
+
+
 def every_kind() -> Design:
     """Return a design with one of each kind of element, section and start; drawn up to be stored, not to be rolled."""
     first = Run(

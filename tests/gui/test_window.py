@@ -16,7 +16,7 @@ from studio.settings import Settings
 from studio.theme import Theme
 from studio.workers.preview import Preview
 from studio.workspace import Workspace
-from tests.designs import bend_run, desk_run, every_kind
+from tests.designs import bend_run, crest_run, every_kind
 
 LIMIT_MS = 300_000
 """ms. The first roll of a fresh machine compiles the kernels."""
@@ -174,8 +174,8 @@ def test_verdict_says_what_is_drawn(window, bend_file, qtbot):
 
 
 def test_finding_leads_to_its_element_and_time(window, tmp_path, qtbot):
-    save(desk_run(), tmp_path / "desk.json")
-    opened(window, tmp_path / "desk.json", qtbot)
+    save(crest_run(), tmp_path / "crest.json")
+    opened(window, tmp_path / "crest.json", qtbot)
     window.actions_by_name["next_finding"].trigger()
     finding = window.workspace.roll.findings[0]
     assert window.workspace.selection == (finding.segment,)

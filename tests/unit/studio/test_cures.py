@@ -9,7 +9,7 @@ from engine.model.elements import Bend, Helix, Straight, Trough, Tube
 from engine.simulate import roll
 from studio.cures import cure_of, offers, shortened
 from studio.workspace import Workspace
-from tests.designs import bend_run, desk_run, single_run
+from tests.designs import bend_run, crest_run, single_run
 
 
 def rolled(design):
@@ -61,9 +61,8 @@ def test_bore_is_taken_over_where_the_running_face_steps_up(qapp):
 
 
 def test_a_finding_without_a_cure_to_press_offers_none(qapp):
-    workspace = rolled(desk_run())
-    [finding] = workspace.roll.findings
-    assert finding.kind is FindingKind.LIFT_OFF
+    workspace = rolled(crest_run())
+    [finding] = of_kind(workspace, FindingKind.IMPACT)
     assert not offers(workspace, finding)
     assert cure_of(workspace, finding) is None
 

@@ -9,7 +9,7 @@ from engine.simulate import roll
 from studio import words
 from studio.item_models import FindingsModel
 from studio.workspace import Workspace
-from tests.designs import bend_run, desk_run, level_run
+from tests.designs import bend_run, crest_run, level_run
 
 
 def rolled(design):
@@ -49,7 +49,7 @@ def test_verdict_of_a_ball_that_stops_fails(qapp):
 
 
 def test_thin_findings_turn_the_line_to_thin(qapp):
-    workspace = rolled(desk_run())
+    workspace = rolled(crest_run())
     assert any(finding.severity == "thin" for finding in workspace.roll.findings)
     assert words.verdict_of(workspace).state == "thin"
 
@@ -67,7 +67,7 @@ def test_figures_are_those_of_the_element(qapp):
 
 
 def test_findings_are_listed_worst_first_with_all_their_words(qapp):
-    workspace = rolled(desk_run())
+    workspace = rolled(crest_run())
     model = FindingsModel(workspace)
     assert model.rowCount() == len(workspace.roll.findings) > 0
     spoken = model.data(model.index(0, 0), words_role())
