@@ -61,6 +61,6 @@ TIME_LIMIT = 120.0
 POLL_STEPS = 64
 """Steps between two looks at the cancel flag."""
 TOLERANCE = 1e-8
-"""Local error a step may make, as a share of ball radius, of speed and of spin. The path of a cylinder run of three seconds
-is then right to 5e-9 m; smaller values only matter where a design is on a knife edge."""
+"""Local error a step may make, as a share of ball radius, of speed and of spin. The path of a cylinder run of three
+seconds is then right to 5e-9 m; smaller values only matter where a design is on a knife edge."""
 VERIFY_TOLERANCE = 1e-11

@@ -115,7 +115,9 @@ def desk() -> Design:
 
 
 def wall() -> Design:
-    """Tideline wall: 35/29 mm clear tube, 25.4 mm steel balls, a funnel, two helices, a jump, a well that sends the ball back up."""
+    """Tideline wall: 35/29 mm clear tube, 25.4 mm steel balls, a funnel, two helices, a jump, a well that sends the
+    ball back up.
+    """
     chain = Chain(CLEAR, 0.02)
     chain.straight(0.25)
     chain.turn(0.20, -0.5, 0.08)

@@ -32,7 +32,8 @@ that takes a guess would be compiled twice (75 s in all, with this 49 s)."""
 FAR = 1e9
 """m. Gap of a wall that cannot be touched from here."""
 FOOT_SPEED = 4.0
-"""Times as fast as the ball its foot on a wall may move: a hollow of radius 4/3 r, tighter than any a ball should roll in."""
+"""Times as fast as the ball its foot on a wall may move: a hollow of radius 4/3 r, tighter than any
+a ball should roll in."""
 FULL_CIRCLE = 2.0 * math.pi - 1e-9
 
 
@@ -338,8 +339,8 @@ def nearest_wall(walls, y, r, active, before):
 def way_into(walls, patch, foot, r):
     """Return a way that a ball must at least travel before its foot comes within the boundaries of a patch, m.
 
-    Along a curve or profile the foot moves at most FOOT_SPEED times as fast as the ball. Round a curve the ball must reach the
-    wedge of allowed angles: at distance rho and an angle d beyond it, rho sin d (rho from a right angle on).
+    Along a curve or profile the foot moves at most FOOT_SPEED times as fast as the ball. Round a curve the ball must
+    reach the wedge of allowed angles: at distance rho and an angle d beyond it, rho sin d (rho from a right angle on).
     """
     way = 0.0
     kind = walls.kind[patch]

@@ -55,7 +55,9 @@ def _links(scene: Scene) -> np.ndarray:
 
 
 def _smooth(scene: Scene, link: np.ndarray) -> np.ndarray:
-    """Return which links are smooth: all, but for ends of tubes and troughs that meet the next at an angle or a step."""
+    """Return which links are smooth: all, but for ends of tubes and troughs that meet the next at an angle or a
+    step.
+    """
     smooth = np.ones(link.shape, dtype=np.bool_)
     swept = np.flatnonzero(scene.kind == SWEPT_INSIDE)
     if len(swept) == 0:
@@ -79,7 +81,7 @@ def _smooth(scene: Scene, link: np.ndarray) -> np.ndarray:
 
 def _cross(a: np.ndarray, b: np.ndarray) -> np.ndarray:
     """Return row-wise cross products (n, 3); numpy's own costs ten times as much on few rows."""
-    return a[:, [1, 2, 0]] * b[:, [2, 0, 1]] - a[:, [2, 0, 1]] * b[:, [1, 2, 0]]
+    return np.asarray(a[:, [1, 2, 0]] * b[:, [2, 0, 1]] - a[:, [2, 0, 1]] * b[:, [1, 2, 0]])
 
 
 def prepare(scene: Scene) -> Walls:

@@ -222,7 +222,9 @@ def _nearest(one: Placed, two: Placed) -> tuple[float, float]:
 
 
 def points_along(curve: Array | None, span: tuple[float, float], spacing: float) -> Array:
-    """Return rows (s, x, y, z) along part of a centreline, no farther apart than `spacing` m (chords between the knots)."""
+    """Return rows (s, x, y, z) along part of a centreline, no farther apart than `spacing` m (chords between the
+    knots).
+    """
     if curve is None:
         return np.zeros((0, 4))
     low, high = max(span[0], float(curve[0, 0])), min(span[1], float(curve[-1, 0]))

@@ -20,7 +20,9 @@ LIMITS: dict[str, Limit] = {
     "slip_time": Limit(0.02, "s", "shorter slips leave no mark and cost no head", "common practice"),
     "slip_speed": Limit(0.01, "m/s", "slower slip cannot be seen", "common practice"),
     "flight_time": Limit(0.01, "s", "a shorter hop is a joint, not a lift-off", "common practice"),
-    "drop": Limit(0.7, "ratio", "a tube that falls steeper than 45 degrees is a drop: the ball falls in it", "geometry"),
+    "drop": Limit(
+        0.7, "ratio", "a tube that falls steeper than 45 degrees is a drop: the ball falls in it", "geometry"
+    ),
     "impact_speed": Limit(1.0, "m/s", "a steel ball chips acrylic and printed lips above this", "common practice"),
     "speed": Limit(2.0, "m/s", "above this a run needs a cover", "common practice"),
     "clearance": Limit(0.05, "ratio", "bore less ball, over the ball: at least 5 % and 1 mm", "common practice"),

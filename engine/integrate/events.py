@@ -108,7 +108,10 @@ def guard_at(walls, ball, mode, work, place):
 
 @kernel
 def last_above(walls, ball, mode, work, place):
-    """Return (share, value) of a place in the step at which a guard that starts at zero is above it; value 0 if there is none."""
+    """Return (share, value) of a place in the step at which a guard that starts at zero is above it.
+
+    Value 0 if there is none.
+    """
     high, slot, piece, q, heading = place
     theta = high
     for _ in range(HALVINGS):

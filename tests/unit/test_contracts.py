@@ -23,7 +23,9 @@ def lint(folder):
     """Run the contracts on the tree in a folder; return exit code and text."""
     command = [sys.executable, "-c", "from importlinter.cli import lint_imports_command as main; main()", "--no-cache"]
     environment = {**os.environ, "PYTHONPATH": str(folder)}
-    done = subprocess.run(command, cwd=folder, env=environment, capture_output=True, text=True, timeout=120, check=False)
+    done = subprocess.run(
+        command, cwd=folder, env=environment, capture_output=True, text=True, timeout=120, check=False
+    )
     return done.returncode, done.stdout + done.stderr
 
 
